@@ -1,0 +1,3 @@
+module evenkeel
+
+go 1.26
