@@ -1,0 +1,95 @@
+package simplex
+
+// Column is one choice of a set: a cost and the three quantities that rows see.
+type Column struct {
+	Cost    float64
+	P, E, R float64
+}
+
+// Group is the columns that sets choose from. Sets of one group are alike.
+type Group struct {
+	Shape  int      // which of a row's R coefficients holds for R; −1: none
+	HasOff bool     // column 0 is "off"
+	Cols   []Column // append only
+
+	active []int32 // columns that may be used, column 0 included; nil: all
+	barred []bool  // the others
+}
+
+// Use bars every column of the group but those listed; nil frees all. Call Reset or
+// Load on every program over the group before its next Solve.
+func (g *Group) Use(columns []int32) {
+	g.active = columns
+	if columns == nil {
+		return
+	}
+	if cap(g.barred) < len(g.Cols) {
+		g.barred = make([]bool, len(g.Cols), 2*len(g.Cols))
+	}
+	g.barred = g.barred[:len(g.Cols)]
+	for j := range g.barred {
+		g.barred[j] = true
+	}
+	for _, j := range columns {
+		g.barred[j] = false
+	}
+}
+
+// usable tells whether the group allows a column.
+func (g *Group) usable(j int32) bool { return g.active == nil || !g.barred[j] }
+
+// Row is one coupling row: Σ (P·p + E·e + R[shape]·r) − own parts ≥ RHS.
+type Row struct {
+	P, E        float64
+	R           []float64 // one a shape
+	Own         []Own
+	RHS         float64
+	SurplusCost float64 // of each unit above RHS, ≥ 0
+	Tag         any     // the caller's
+}
+
+// Own is what a row leaves out of the columns of one group.
+type Own struct {
+	Group   int
+	P, E, R float64
+}
+
+// coef is the coefficient of a column of group g in the row.
+func (r *Row) coef(g int, shape int, c *Column) float64 {
+	p, e, x := r.P, r.E, 0.0
+	if shape >= 0 {
+		x = r.R[shape]
+	}
+	for i := range r.Own {
+		if o := &r.Own[i]; o.Group == g {
+			p -= o.P
+			e -= o.E
+			x -= o.R
+		}
+	}
+	return p*c.P + e*c.E + x*c.R
+}
+
+// Status is how a solve ended.
+type Status uint8
+
+const (
+	// Optimal: primal and dual feasible.
+	Optimal Status = iota
+	// Cutoff: the objective's lower bound passed the cutoff.
+	Cutoff
+	// Infeasible: no choice satisfies the rows.
+	Infeasible
+	// Stalled: the pivot limit was reached or the basis became singular; the objective is still a lower bound.
+	Stalled
+)
+
+// Basis is a snapshot from which a solve can go on.
+type Basis struct {
+	keys   []int32
+	rows   []*Row
+	basics []basic
+}
+
+// basic is a working basic variable: a surplus (set < 0, col = row) or a column of a set.
+type basic struct{ set, col int32 }
