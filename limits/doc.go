@@ -19,4 +19,11 @@
 // X being the largest drop allowed between s and t. It is safe for every s: let s
 // be the last instant with dev = 0; from there on dev ≥ 0, so a larger damping only
 // lowers it.
+//
+// A RoCoF limit ρ over a window w is the same row without damping (a0 = 0), with
+// t − s ≤ w and X = ρ·w. Intervals shorter than the window count because a window may
+// begin before the loss, or while frequency is held at nominal. An instantaneous RoCoF
+// limit and the equilibrium in the steady band are rows at one instant.
+//
+// Row writes these rows; Scan finds the instants at which they matter.
 package limits

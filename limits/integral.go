@@ -24,15 +24,11 @@ func (s Shape) Weighted(from, to, a0 float64) float64 {
 				continue
 			}
 			// Both ends are cut from the whole piece, never one from a cut one.
-			uncut := v
+			if from > u {
+				u, a = from, between(&ps[i], &ps[i+1], from)
+			}
 			if to < v {
 				v, b = to, between(&ps[i], &ps[i+1], to)
-			}
-			if from > u {
-				if from < uncut {
-					a = between(&ps[i], &ps[i+1], from)
-				}
-				u = from
 			}
 		} else if from > u {
 			u = from
@@ -73,10 +69,8 @@ func pieceWeights(z float64) (p1, p2 float64) {
 	return p1, p2 / 2
 }
 
-// decayedS gives ∫₀ʰ e^(−a0·τ) dτ in seconds, h for a0 = 0.
+// decayedS gives ∫₀ʰ e^(−a0·τ) dτ in seconds; h for a0 = 0.
 func decayedS(h, a0 float64) float64 {
-	if a0 == 0 {
-		return h
-	}
-	return -math.Expm1(-a0*h) / a0
+	p1, _ := pieceWeights(a0 * h)
+	return h * p1
 }

@@ -1,0 +1,202 @@
+package limits
+
+import (
+	"math"
+	"slices"
+)
+
+// LeastHorizonS is how long after a loss the scan looks for the nadir at least, in
+// seconds (common practice: primary response has acted and restoration not begun).
+const LeastHorizonS = 60
+
+// MaxDampingPerS caps the damping rate a0 that a scan uses, in 1/s. Any lower rate is
+// safe; the cap only keeps the arithmetic sound where next to no inertia is on offer.
+const MaxDampingPerS = 1e3
+
+// Scan finds the instants at which a state of the system comes nearest to breaking its
+// limits after a loss, exactly and in continuous time: net imbalance is linear between
+// the merged knots of all shapes, so that deviation has a closed form there. It is
+// prepared once for an hour and asked often; it is not for concurrent use.
+type Scan struct {
+	limits         Limits
+	shapes         []Shape
+	a0             float64
+	dampingMWPerHz float64
+
+	// Nodes are the merged knots up to the horizon; where a shape jumps, two nodes share
+	// one instant. Piece j runs from node j to node j+1.
+	atS    []float64
+	shares []float64 // shape by shape, one share a node
+	pieces []piece
+	by     int // first node at SteadyByS
+	until  int // first node at SteadyUntilS
+
+	withdraws bool
+	windows   []window // starts of RoCoF windows between which all is smooth
+	instants  instants // for RoCoF without a window
+	balance   instants // for the balance in the steady band
+
+	net    []float64 // scratch: net imbalance at each node, MW
+	cum    []float64 // scratch: its undamped integral from the loss on, MW·s
+	starts []onset   // scratch
+}
+
+// piece is one linear piece of the net imbalance with what its closed form needs.
+type piece struct {
+	h     float64 // length, s; 0 at a jump
+	decay float64 // e^(−a0·h)
+	c1    float64 // ∫ e^(−a0(h−x)) dx
+	c2    float64 // ∫ e^(−a0(h−x))·x/h dx
+}
+
+// Worst is the instant at which a limit is nearest to being broken, or is broken worst.
+type Worst struct {
+	At       Instant
+	ExcessMW float64 // MW of the loss not covered there, see Row.ExcessMW
+}
+
+// Indices into what Scan.Worst fills in.
+const (
+	WorstRoCoF   = iota
+	WorstNadir   // the lowest frequency
+	WorstReturn  // the lowest frequency from SteadyByS on
+	WorstBalance // the equilibrium from SteadyByS on
+	Worsts       = 4
+)
+
+// NewScan prepares the scan of one hour. a0 (1/s) is a lower bound of D·f0/(2·E) for
+// every state that will be asked about; 0 leaves damping out. dampingMWPerHz is D.
+func NewScan(l Limits, shapes []Shape, a0, dampingMWPerHz float64) *Scan {
+	if !(a0 > 0) {
+		a0 = 0
+	}
+	s := &Scan{limits: l, shapes: shapes, a0: math.Min(a0, MaxDampingPerS), dampingMWPerHz: dampingMWPerHz}
+	byS := math.Max(l.SteadyByS, 0)
+	untilS := math.Max(l.SteadyUntilS, byS)
+	horizonS := max(untilS, LeastHorizonS, l.WindowS)
+
+	times := []float64{0, byS, untilS, horizonS}
+	if l.WindowS > 0 {
+		times = append(times, l.WindowS)
+	}
+	for _, sh := range shapes {
+		s.withdraws = s.withdraws || sh.Withdraws()
+		for _, p := range sh.points {
+			if p.s < horizonS {
+				times = append(times, p.s)
+			}
+		}
+	}
+	slices.Sort(times)
+	times = slices.Compact(times)
+
+	var left []bool // whether a node stands for the left side of a jump
+	for _, t := range times {
+		jump := t > 0 && slices.ContainsFunc(shapes, func(sh Shape) bool { return sh.Before(t) != sh.At(t) })
+		if jump {
+			s.atS, left = append(s.atS, t), append(left, true)
+		}
+		if !jump || t < horizonS {
+			s.atS, left = append(s.atS, t), append(left, false)
+		}
+	}
+	nodes := len(s.atS)
+	for _, sh := range shapes {
+		for j, t := range s.atS {
+			if left[j] {
+				s.shares = append(s.shares, sh.Before(t))
+			} else {
+				s.shares = append(s.shares, sh.At(t))
+			}
+		}
+	}
+	s.pieces = make([]piece, nodes-1)
+	for j := range s.pieces {
+		h := s.atS[j+1] - s.atS[j]
+		p1, p2 := pieceWeights(s.a0 * h)
+		s.pieces[j] = piece{h, math.Exp(-s.a0 * h), h * p1, h * p2}
+	}
+	s.by = slices.Index(s.atS, byS)
+	s.until = slices.Index(s.atS, untilS)
+
+	if l.WindowS > 0 {
+		if s.withdraws {
+			s.windows = s.windowStarts(l.WindowS, horizonS)
+		}
+	} else {
+		s.instants = newInstants(times, shapes)
+	}
+	first, _ := slices.BinarySearch(times, byS)
+	last, _ := slices.BinarySearch(times, untilS)
+	s.balance = newInstants(times[first:last+1], shapes)
+
+	s.net = make([]float64, nodes)
+	s.cum = make([]float64, nodes)
+	s.starts = make([]onset, 0, nodes+1)
+	return s
+}
+
+// Row gives the row that keeps a limit at an instant, with the damping of the scan.
+func (s *Scan) Row(at Instant) Row { return s.limits.Row(at, s.shapes, s.a0) }
+
+// Worst fills out with the worst instant of each limit after the loss of lossMW that
+// leaves inertiaMWs of kinetic energy and responseMW of each shape. Every instant
+// reported is one whose Row has the excess reported. It does not allocate.
+func (s *Scan) Worst(lossMW, inertiaMWs float64, responseMW []float64, out *[Worsts]Worst) {
+	net := s.net
+	for j := range net {
+		net[j] = lossMW
+	}
+	for i, r := range responseMW[:len(s.shapes)] {
+		if r == 0 {
+			continue
+		}
+		shares := s.shares[i*len(net):][:len(net)]
+		for j := range net {
+			net[j] -= r * shares[j]
+		}
+	}
+
+	switch {
+	case !(s.limits.WindowS > 0):
+		at, mw := s.instants.least(responseMW)
+		out[WorstRoCoF] = Worst{
+			Instant{Kind: RoCoF, FromS: at, ToS: at},
+			lossMW - mw - 2*s.limits.MaxHzPerS/s.limits.NominalHz*inertiaMWs,
+		}
+	case s.withdraws:
+		out[WorstRoCoF] = s.worst(RoCoF, s.steepest(), inertiaMWs)
+	default:
+		out[WorstRoCoF] = s.worst(RoCoF, s.steepestFirst(), inertiaMWs)
+	}
+
+	nadir, back := s.sweep()
+	out[WorstNadir] = s.worst(Nadir, nadir, inertiaMWs)
+	out[WorstReturn] = s.worst(Steady, back, inertiaMWs)
+
+	at, mw := s.balance.least(responseMW)
+	out[WorstBalance] = Worst{
+		Instant{Kind: Steady, Balance: true, FromS: at, ToS: at},
+		lossMW - mw - s.limits.SteadyHz*s.dampingMWPerHz,
+	}
+}
+
+// span is an interval and the weighted integral of net imbalance over it, MW·s.
+type span struct {
+	mws, fromS, toS float64
+}
+
+// worst turns a span into the excess of its row.
+func (s *Scan) worst(k Kind, sp span, inertiaMWs float64) Worst {
+	a0 := s.a0
+	if k == RoCoF {
+		a0 = 0
+	}
+	free := 2 * s.limits.dropHz(k) / s.limits.NominalHz * inertiaMWs
+	w := Worst{Instant{Kind: k, FromS: sp.fromS, ToS: sp.toS}, math.Inf(-1)}
+	// An interval below the clock's rounding holds no loss to speak of.
+	if sp.toS > sp.fromS {
+		w.ExcessMW = (sp.mws - free) / decayedS(sp.toS-sp.fromS, a0)
+	}
+	return w
+}
