@@ -38,11 +38,12 @@ type window struct {
 }
 
 // windowStarts lists the starts at which a RoCoF window begins or ends at a node.
-func (s *Scan) windowStarts(windowS, horizonS float64) []window {
+func (s *Scan) windowStarts(windowS float64) []window {
 	var at []float64
+	lastS := s.atS[s.steep] - windowS
 	for _, t := range s.atS {
 		for _, from := range [2]float64{t, t - windowS} {
-			if from >= 0 && from <= horizonS-windowS {
+			if from >= 0 && from <= lastS {
 				at = append(at, from)
 			}
 		}
@@ -65,7 +66,7 @@ func (s *Scan) windowStarts(windowS, horizonS float64) []window {
 
 // locate gives the piece that holds the middle of [t, t+length] and how far into it t is.
 func (s *Scan) locate(t, length float64) (j int, in float64) {
-	for j < len(s.pieces)-1 && s.atS[j+1] <= t+length/2 {
+	for j < s.steep-1 && s.atS[j+1] <= t+length/2 {
 		j++
 	}
 	return j, min(max(t-s.atS[j], 0), s.pieces[j].h)
@@ -89,14 +90,14 @@ func (s *Scan) steepest() span {
 		starts = append(starts, onset{})
 	}
 	cum[0] = 0
-	for j := range s.pieces {
+	for j := range s.pieces[:s.steep] {
 		h, n0, n1 := s.pieces[j].h, net[j], net[j+1]
 		cum[j+1] = cum[j] + h*(n0+n1)/2
 		switch {
 		case n0 <= 0 && n1 > 0:
 			t := h * (-n0 / (n1 - n0))
 			starts = append(starts, onset{s.atS[j] + t, cum[j] + t*n0/2})
-		case n0 > 0 && (n1 <= 0 || j == len(s.pieces)-1):
+		case n0 > 0 && (n1 <= 0 || j == s.steep-1):
 			t := h
 			if n1 < 0 {
 				t = h * (n0 / (n0 - n1))

@@ -7,8 +7,10 @@ type Instant struct {
 	// Balance, for Steady only, tests that response and damping together carry the loss
 	// at SteadyHz; otherwise Steady tests that frequency is back within SteadyHz.
 	Balance bool
-	FromS   float64 // seconds after the loss
-	ToS     float64
+	// Before, where FromS = ToS, tests the side before a jump of a shape, not the one after.
+	Before bool
+	FromS  float64 // seconds after the loss
+	ToS    float64
 }
 
 // Row is one linear row that keeps a limit at one instant after one loss:
@@ -37,9 +39,6 @@ type Row struct {
 //   - Nadir and the return to the steady band: the drop at ToS, counted from FromS, is
 //     at most NadirHz or SteadyHz.
 //   - Balance: the response at ToS and damping at SteadyHz carry the loss.
-//
-// Where a shape jumps at the one instant of a row, its smaller side counts, save at the
-// loss itself.
 func (l Limits) Row(at Instant, shapes []Shape, a0 float64) Row {
 	r := Row{At: at, Response: make([]float64, len(shapes))}
 	switch {
@@ -51,7 +50,11 @@ func (l Limits) Row(at Instant, shapes []Shape, a0 float64) Row {
 			r.InertiaPerMWs = 2 * l.MaxHzPerS / l.NominalHz
 		}
 		for i, s := range shapes {
-			r.Response[i] = s.Least(at.ToS)
+			if at.Before {
+				r.Response[i] = s.Before(at.ToS)
+			} else {
+				r.Response[i] = s.At(at.ToS)
+			}
 		}
 		return r
 	case at.Kind == RoCoF:

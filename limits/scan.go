@@ -17,6 +17,10 @@ const MaxDampingPerS = 1e3
 // limits after a loss, exactly and in continuous time: net imbalance is linear between
 // the merged knots of all shapes, so that deviation has a closed form there. It is
 // prepared once for an hour and asked often; it is not for concurrent use.
+//
+// RoCoF is watched up to SteadyUntilS, at least for one window; the nadir at least for
+// LeastHorizonS; the steady band from SteadyByS to SteadyUntilS. Jumps at either end of
+// those times count with their inner side.
 type Scan struct {
 	limits         Limits
 	shapes         []Shape
@@ -26,10 +30,12 @@ type Scan struct {
 	// Nodes are the merged knots up to the horizon; where a shape jumps, two nodes share
 	// one instant. Piece j runs from node j to node j+1.
 	atS    []float64
+	left   []bool    // whether a node stands for the side before a jump
 	shares []float64 // shape by shape, one share a node
 	pieces []piece
 	by     int // first node at SteadyByS
 	until  int // first node at SteadyUntilS
+	steep  int // first node at the end of the time in which RoCoF is watched
 
 	withdraws bool
 	windows   []window // starts of RoCoF windows between which all is smooth
@@ -73,14 +79,40 @@ func NewScan(l Limits, shapes []Shape, a0, dampingMWPerHz float64) *Scan {
 	s := &Scan{limits: l, shapes: shapes, a0: math.Min(a0, MaxDampingPerS), dampingMWPerHz: dampingMWPerHz}
 	byS := math.Max(l.SteadyByS, 0)
 	untilS := math.Max(l.SteadyUntilS, byS)
-	horizonS := max(untilS, LeastHorizonS, l.WindowS)
+	steepS := math.Max(untilS, l.WindowS)
+	horizonS := math.Max(steepS, LeastHorizonS)
 
-	times := []float64{0, byS, untilS, horizonS}
-	if l.WindowS > 0 {
-		times = append(times, l.WindowS)
+	s.merge(horizonS, 0, byS, untilS, steepS, math.Max(l.WindowS, 0))
+	s.pieces = make([]piece, len(s.atS)-1)
+	for j := range s.pieces {
+		h := s.atS[j+1] - s.atS[j]
+		p1, p2 := pieceWeights(s.a0 * h)
+		s.pieces[j] = piece{h, math.Exp(-s.a0 * h), h * p1, h * p2}
 	}
-	for _, sh := range shapes {
-		s.withdraws = s.withdraws || sh.Withdraws()
+	s.by = slices.Index(s.atS, byS)
+	s.until = slices.Index(s.atS, untilS)
+	s.steep = slices.Index(s.atS, steepS)
+
+	s.withdraws = slices.ContainsFunc(shapes, Shape.Withdraws)
+	switch {
+	case !(l.WindowS > 0):
+		s.instants = s.sidesBetween(0, s.until)
+	case s.withdraws:
+		s.windows = s.windowStarts(l.WindowS)
+	}
+	s.balance = s.sidesBetween(s.by, s.until)
+
+	s.net = make([]float64, len(s.atS))
+	s.cum = make([]float64, len(s.atS))
+	s.starts = make([]onset, 0, len(s.atS)+1)
+	return s
+}
+
+// merge lays out the nodes: the knots of all shapes and further instants, up to and with
+// the horizon.
+func (s *Scan) merge(horizonS float64, further ...float64) {
+	times := append(further, horizonS)
+	for _, sh := range s.shapes {
 		for _, p := range sh.points {
 			if p.s < horizonS {
 				times = append(times, p.s)
@@ -89,51 +121,24 @@ func NewScan(l Limits, shapes []Shape, a0, dampingMWPerHz float64) *Scan {
 	}
 	slices.Sort(times)
 	times = slices.Compact(times)
-
-	var left []bool // whether a node stands for the left side of a jump
 	for _, t := range times {
-		jump := t > 0 && slices.ContainsFunc(shapes, func(sh Shape) bool { return sh.Before(t) != sh.At(t) })
+		jump := t > 0 && slices.ContainsFunc(s.shapes, func(sh Shape) bool { return sh.Before(t) != sh.At(t) })
 		if jump {
-			s.atS, left = append(s.atS, t), append(left, true)
+			s.atS, s.left = append(s.atS, t), append(s.left, true)
 		}
 		if !jump || t < horizonS {
-			s.atS, left = append(s.atS, t), append(left, false)
+			s.atS, s.left = append(s.atS, t), append(s.left, false)
 		}
 	}
-	nodes := len(s.atS)
-	for _, sh := range shapes {
+	for _, sh := range s.shapes {
 		for j, t := range s.atS {
-			if left[j] {
+			if s.left[j] {
 				s.shares = append(s.shares, sh.Before(t))
 			} else {
 				s.shares = append(s.shares, sh.At(t))
 			}
 		}
 	}
-	s.pieces = make([]piece, nodes-1)
-	for j := range s.pieces {
-		h := s.atS[j+1] - s.atS[j]
-		p1, p2 := pieceWeights(s.a0 * h)
-		s.pieces[j] = piece{h, math.Exp(-s.a0 * h), h * p1, h * p2}
-	}
-	s.by = slices.Index(s.atS, byS)
-	s.until = slices.Index(s.atS, untilS)
-
-	if l.WindowS > 0 {
-		if s.withdraws {
-			s.windows = s.windowStarts(l.WindowS, horizonS)
-		}
-	} else {
-		s.instants = newInstants(times, shapes)
-	}
-	first, _ := slices.BinarySearch(times, byS)
-	last, _ := slices.BinarySearch(times, untilS)
-	s.balance = newInstants(times[first:last+1], shapes)
-
-	s.net = make([]float64, nodes)
-	s.cum = make([]float64, nodes)
-	s.starts = make([]onset, 0, nodes+1)
-	return s
 }
 
 // Row gives the row that keeps a limit at an instant, with the damping of the scan.
@@ -161,7 +166,7 @@ func (s *Scan) Worst(lossMW, inertiaMWs float64, responseMW []float64, out *[Wor
 	case !(s.limits.WindowS > 0):
 		at, mw := s.instants.least(responseMW)
 		out[WorstRoCoF] = Worst{
-			Instant{Kind: RoCoF, FromS: at, ToS: at},
+			Instant{Kind: RoCoF, Before: at.before, FromS: at.s, ToS: at.s},
 			lossMW - mw - 2*s.limits.MaxHzPerS/s.limits.NominalHz*inertiaMWs,
 		}
 	case s.withdraws:
@@ -176,7 +181,7 @@ func (s *Scan) Worst(lossMW, inertiaMWs float64, responseMW []float64, out *[Wor
 
 	at, mw := s.balance.least(responseMW)
 	out[WorstBalance] = Worst{
-		Instant{Kind: Steady, Balance: true, FromS: at, ToS: at},
+		Instant{Kind: Steady, Balance: true, Before: at.before, FromS: at.s, ToS: at.s},
 		lossMW - mw - s.limits.SteadyHz*s.dampingMWPerHz,
 	}
 }

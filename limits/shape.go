@@ -149,24 +149,19 @@ func (s Shape) most() float64 {
 	return most
 }
 
-// LeastAfter gives the smallest φ in the closed interval [from, until], seconds. At a
-// jump, at either end too, both sides count.
+// LeastAfter gives the smallest φ between two instants, in seconds. A jump between
+// them counts with both sides, one at either end with its inner side.
 func (s Shape) LeastAfter(from, until float64) float64 {
-	least := math.Min(s.Least(from), s.Least(until))
+	least := s.At(from)
+	if until > from {
+		least = math.Min(least, s.Before(until))
+	}
 	for _, p := range s.points {
 		if p.s > from && p.s < until {
 			least = math.Min(least, math.Min(p.left, p.right))
 		}
 	}
 	return least
-}
-
-// Least gives the smaller of φ(t−) and φ(t); at t ≤ 0, where the loss happens, φ(t).
-func (s Shape) Least(t float64) float64 {
-	if t <= 0 {
-		return s.At(t)
-	}
-	return math.Min(s.Before(t), s.At(t))
 }
 
 // FullActivationS gives the first instant, in seconds, at which the shape delivers the
