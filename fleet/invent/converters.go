@@ -73,10 +73,12 @@ func (p *plan) addSolar() {
 	})
 }
 
+// addBatteries adds fast response: 4 to 8 % of the peak demand in large systems, up to
+// three times that in the smallest, whose largest loss weighs more.
 func (p *plan) addBatteries(machines int) {
 	r := p.streams.of("batteries")
 	n := min(1+machines/50, 5)
-	total := p.peakMW * uniform(r, 0.04, 0.08)
+	total := p.peakMW * uniform(r, 0.04, 0.08) * (1 + 10/float64(machines))
 	for i := range n {
 		mw := total / float64(n) * spread(r, 0.2)
 		mw = roundTo(mw, sizeStep(mw))

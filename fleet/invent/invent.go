@@ -5,7 +5,10 @@ import (
 	"io/fs"
 	"os"
 	"path/filepath"
+	"strings"
 	"time"
+	"unicode"
+	"unicode/utf8"
 )
 
 // Options say what case to invent. The zero value of every field but Machines is fine.
@@ -17,19 +20,34 @@ type Options struct {
 	Name     string    // of the case; "": one is made up
 }
 
-// MinMachines is the smallest system that can be invented: with fewer units, losing one
-// is losing the system.
-const MinMachines = 5
+// The systems that can be invented. With fewer units, losing one is losing the system
+// (below ten, some hours cannot be made secure); with more, a case is more than a reader
+// takes.
+const (
+	MinMachines = 5
+	MaxMachines = 3000
+)
+
+const (
+	maxCells = 30_000_000 // numbers in one series file
+	maxName  = 80         // characters
+)
 
 func (o Options) withDefaults() (Options, error) {
-	if o.Machines < MinMachines {
-		return o, fmt.Errorf("invent: %d machines: at least %d are needed", o.Machines, MinMachines)
+	if o.Machines < MinMachines || o.Machines > MaxMachines {
+		return o, fmt.Errorf("invent: %d machines: %d to %d can be had", o.Machines, MinMachines, MaxMachines)
 	}
 	if o.Hours < 0 {
 		return o, fmt.Errorf("invent: %d hours: at least 1 is needed", o.Hours)
 	}
 	if o.Hours == 0 {
 		o.Hours = yearH
+	}
+	if o.Hours > maxCells/(o.Machines+1) {
+		return o, fmt.Errorf("invent: %d hours: at most %d can be had with %d machines", o.Hours, maxCells/(o.Machines+1), o.Machines)
+	}
+	if !goodName(o.Name) {
+		return o, fmt.Errorf("invent: name %q: at most %d printable characters, no blank at either end", o.Name, maxName)
 	}
 	if o.Start.IsZero() {
 		o.Start = time.Date(2030, 1, 1, 0, 0, 0, 0, time.UTC)
@@ -39,6 +57,16 @@ func (o Options) withDefaults() (Options, error) {
 		return o, fmt.Errorf("invent: start %s: a full hour is needed", o.Start.Format(time.RFC3339Nano))
 	}
 	return o, nil
+}
+
+// goodName tells whether a case can be called so; "" asks for a name to be made up.
+func goodName(s string) bool {
+	for _, c := range s {
+		if !unicode.IsPrint(c) || c == utf8.RuneError {
+			return false
+		}
+	}
+	return utf8.RuneCountInString(s) <= maxName && strings.TrimSpace(s) == s
 }
 
 // Write invents a case and writes dir/case.yaml and its series. The folder appears

@@ -77,7 +77,11 @@ func TestBadOptions(t *testing.T) {
 	for _, o := range []Options{
 		{Machines: MinMachines - 1},
 		{Machines: -3},
+		{Machines: MaxMachines + 1},
 		{Machines: 10, Hours: -1},
+		{Machines: 10, Hours: 5_000_000},
+		{Machines: 10, Name: "two\nlines"},
+		{Machines: 10, Name: strings.Repeat("x", 81)},
 		{Machines: 10, Start: time.Date(2030, 1, 1, 0, 30, 0, 0, time.UTC)},
 	} {
 		dir := filepath.Join(t.TempDir(), "case")

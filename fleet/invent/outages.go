@@ -68,8 +68,7 @@ func (p *plan) planOutage(r *rand.Rand, m *machine, firmMW float64, up, left []f
 	for range 12 {
 		first := 95 + r.IntN(290-95-days)
 		out := func(i int) bool {
-			d := p.weather.times[i].YearDay()
-			return d >= first && d < first+days
+			return p.weather.yearDay[i] >= first && p.weather.yearDay[i] < first+days
 		}
 		fits := true
 		for i := range left {

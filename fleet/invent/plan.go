@@ -8,12 +8,14 @@ import (
 
 // plan is a whole case before it is written.
 type plan struct {
-	name    string
-	peakMW  float64 // highest demand of the first year
-	firmMW  float64 // of thermal and reservoir hydro machines together
-	rocof   float64 // Hz/s
-	horizon int     // hours worked out, at least a year
-	hours   int     // hours written
+	name   string
+	peakMW float64 // highest demand of the first year
+	firmMW float64 // of thermal and reservoir hydro machines together
+
+	rocofHzPerS, nadirHz float64
+
+	horizon int // hours worked out, at least a year
+	hours   int // hours written
 
 	streams streams
 	weather *weather
@@ -117,9 +119,22 @@ func makePlan(o Options) *plan {
 	p.addConnections(o.Machines)
 	p.addLosses()
 
-	limits := []float64{0.5, 0.6, 0.75, 1}
-	p.rocof = limits[p.streams.of("limits").IntN(len(limits))]
+	p.setLimits(o.Machines)
 	return p
+}
+
+// setLimits draws the limits: the smaller the system, the larger its largest loss
+// against its inertia, and the wider the corridor that it has learnt to live with.
+func (p *plan) setLimits(machines int) {
+	r := p.streams.of("limits")
+	switch {
+	case machines < 10:
+		p.rocofHzPerS, p.nadirHz = among(r, 1.5, 2), 1
+	case machines < 20:
+		p.rocofHzPerS, p.nadirHz = among(r, 1, 1.25, 1.5), 1
+	default:
+		p.rocofHzPerS, p.nadirHz = among(r, 0.5, 0.6, 0.75, 1), 0.8
+	}
 }
 
 // addDemand scales demand to the firm capacity: the peak is 70 to 75 % of it.

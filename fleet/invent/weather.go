@@ -9,6 +9,7 @@ import (
 // weather is what demand, wind, sun, rivers and heat have in common.
 type weather struct {
 	times       []time.Time
+	yearDay     []int // 1 is New Year's Day
 	latitudeDeg float64
 	tempC       []float64
 	smoothC     []float64 // temperature as buildings feel it
@@ -24,7 +25,9 @@ func makeWeather(s streams, times []time.Time) *weather {
 	front, sky := red(s.of("temperature"), n, 60), red(s.of("cloud"), n, 14)
 	w.tempC, w.smoothC = make([]float64, n), make([]float64, n)
 	w.cloud, w.wind = make([]float64, n), make([]float64, n)
+	w.yearDay = make([]int, n)
 	for i, t := range times {
+		w.yearDay[i] = t.YearDay()
 		w.wind[i] = math.Sqrt(0.85)*synoptic[i] + math.Sqrt(0.15)*breeze[i]
 		w.cloud[i] = normalShare(0.35 + 0.85*sky[i] + 0.3*synoptic[i])
 		day := math.Cos(2 * math.Pi * (hourOfDay(t) - 15) / 24)
