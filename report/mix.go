@@ -2,7 +2,6 @@ package report
 
 import (
 	"fmt"
-	"image/color"
 	"slices"
 	"time"
 
@@ -20,13 +19,6 @@ const (
 	daysForMeans = 15
 	hardDays     = 5
 )
-
-// panels are the three stacks of one stretch of hours.
-type panels struct {
-	bins                      bins
-	output, response, inertia []layer
-	demand                    []float64
-}
 
 // mixFigure shows who provides output, response by speed, and inertia: over the run
 // and, below, hour by hour in the five hardest days.
@@ -90,96 +82,6 @@ func mixFigure(c *fleet.Case, hours, without []solve.Hour, o Options) figure {
 			drawRows(lower, byDay, keys, dayNames(hard))
 		}
 	}}
-}
-
-// hourlyPanels makes a bin of every hour.
-func hourlyPanels(g groups, hours []solve.Hour) panels {
-	p := newPanels(g, len(hours))
-	for i := range hours {
-		x := xOf(hours[i].Time)
-		p.bins.from, p.bins.to = append(p.bins.from, x), append(p.bins.to, x+1./24)
-		p.add(g, i, &hours[i], 1)
-	}
-	return p
-}
-
-// dailyPanels makes a bin of every day, with the means of its hours.
-func dailyPanels(g groups, hours []solve.Hour, days []day) panels {
-	p := newPanels(g, len(days))
-	for i, d := range days {
-		x := xOf(d.start)
-		p.bins.from, p.bins.to = append(p.bins.from, x), append(p.bins.to, x+1)
-		for h := d.from; h < d.to; h++ {
-			p.add(g, i, &hours[h], 1/float64(d.to-d.from))
-		}
-	}
-	return p
-}
-
-func newPanels(g groups, n int) panels {
-	p := panels{demand: make([]float64, n)}
-	for k := range g.names {
-		p.output = append(p.output, newLayer(g.names[k], g.colors[k], n))
-		p.inertia = append(p.inertia, newLayer(g.names[k], g.colors[k], n))
-	}
-	p.inertia = append(p.inertia, newLayer("load", rgb(0xBBBBBB), n))
-	for s := range g.c.Shapes {
-		p.response = append(p.response, newLayer(g.c.Shapes[s].Name, shapeColors[s%len(shapeColors)], n))
-	}
-	return p
-}
-
-// add adds an hour to bin i, its power in MW, its kinetic energy in GW·s.
-func (p *panels) add(g groups, i int, h *solve.Hour, weight float64) {
-	p.demand[i] += weight * finite(h.DemandMW)
-	left := h.InertiaMWs
-	for r := range h.Dispatch {
-		d := &h.Dispatch[r]
-		k := g.of[r]
-		p.output[k].add(i, weight*d.OutputMW)
-		p.inertia[k].add(i, weight*d.InertiaMWs/1000)
-		left -= d.InertiaMWs
-		if s := g.c.Resources[r].Response.Shape; s >= 0 && s < len(p.response) {
-			p.response[s].add(i, weight*d.ResponseMW)
-		}
-	}
-	// What no resource gives is the load's own; a rounding remainder is not.
-	if left > 1e-9*h.InertiaMWs {
-		p.inertia[len(p.inertia)-1].add(i, weight*left/1000)
-	}
-}
-
-// scales are the y axes that all panels of a row share.
-type scales struct {
-	min, max [3]float64
-	inGW     [3]bool
-	none     [3]bool // nothing to show
-}
-
-func (p *panels) stacks() [3]stack {
-	return [3]stack{{p.bins, p.output}, {p.bins, p.response}, {p.bins, p.inertia}}
-}
-
-func newScales(all []panels) scales {
-	var s scales
-	for _, p := range all {
-		for row, st := range p.stacks() {
-			lo, hi := st.extent()
-			s.min[row], s.max[row] = min(s.min[row], lo), max(s.max[row], hi)
-		}
-		for _, d := range p.demand {
-			s.max[0] = max(s.max[0], d)
-		}
-	}
-	for row := range s.max {
-		s.inGW[row] = row < 2 && s.max[row] >= 20_000
-		s.none[row] = s.min[row] == 0 && s.max[row] == 0
-		s.max[row] = roundUp(s.max[row])
-		if s.min[row] < 0 {
-			s.min[row] = -roundUp(-s.min[row])
-		}
-	}
-	return s
 }
 
 func (s scales) apply(p *plot.Plot, row int) {
@@ -375,57 +277,3 @@ func drawRows(c draw.Canvas, rows [][]*plot.Plot, keys [3][]entry, titles []stri
 		drawKey(k, keys[row])
 	}
 }
-
-// groups says how resources are shown together: each by itself where there are few,
-// else by kind.
-type groups struct {
-	c      *fleet.Case
-	of     []int // group of each resource
-	names  []string
-	colors []color.Color
-}
-
-// shownAlone is how many resources still can be told apart by colour.
-const shownAlone = 9
-
-func newGroups(c *fleet.Case) groups {
-	g := groups{c: c, of: make([]int, len(c.Resources))}
-	if len(c.Resources) <= shownAlone {
-		for r := range c.Resources {
-			g.of[r] = r
-			g.names = append(g.names, c.Resources[r].Name)
-			g.colors = append(g.colors, resourceColors[r])
-		}
-		return g
-	}
-	index := map[fleet.Kind]int{}
-	for k := fleet.Thermal; k <= fleet.Link; k++ {
-		for r := range c.Resources {
-			if c.Resources[r].Kind != k {
-				continue
-			}
-			if _, ok := index[k]; !ok {
-				index[k] = len(g.names)
-				g.names = append(g.names, k.String())
-				g.colors = append(g.colors, kindColors[k])
-			}
-			g.of[r] = index[k]
-		}
-	}
-	return g
-}
-
-// Colours that stay apart with any common colour blindness.
-var (
-	kindColors = [...]color.Color{
-		fleet.Thermal: rgb(0xCC6677), fleet.Hydro: rgb(0x332288), fleet.Condenser: rgb(0xAA4499), fleet.Battery: rgb(0x44AA99),
-		fleet.Wind: rgb(0x88CCEE), fleet.Solar: rgb(0xDDCC77), fleet.Demand: rgb(0x117733), fleet.Link: rgb(0x882255),
-	}
-	resourceColors = [shownAlone]color.Color{
-		rgb(0xCC6677), rgb(0x332288), rgb(0xDDCC77), rgb(0x117733), rgb(0x88CCEE),
-		rgb(0x882255), rgb(0x44AA99), rgb(0x999933), rgb(0xAA4499),
-	}
-	shapeColors = []color.Color{
-		rgb(0x0072B2), rgb(0xE69F00), rgb(0x009E73), rgb(0xCC79A7), rgb(0x56B4E9), rgb(0xD55E00), rgb(0xF0E442), rgb(0x999999),
-	}
-)
