@@ -4,7 +4,7 @@ import "math"
 
 const (
 	tolShare   = 1e-9  // of a column's weight below zero
-	tolSurplus = 1e-7  // of a row's surplus below zero, relative to the row's scale
+	tolSurplus = 1e-9  // of a row's surplus below zero, relative to the row's scale
 	tolPivot   = 1e-9  // smallest pivot, relative to the row of the tableau
 	refresh    = 60    // pivots between inversions
 	pivotLimit = 20000 // of one solve
@@ -207,13 +207,14 @@ func (lp *LP) each(s *set, visit func(j int32)) {
 	if !s.on {
 		return
 	}
-	if g.active == nil {
+	active := lp.active[s.group]
+	if active == nil {
 		for j := from; j < int32(len(g.Cols)); j++ {
 			visit(j)
 		}
 		return
 	}
-	for _, j := range g.active {
+	for _, j := range active {
 		if j >= from {
 			visit(j)
 		}
@@ -398,7 +399,8 @@ func (lp *LP) pivot(pos int, up, careful bool) Status {
 		if !s.on {
 			continue
 		}
-		if g.active == nil {
+		active := lp.active[s.group]
+		if active == nil {
 			for j := from; j < len(g.Cols); j++ {
 				if a := sign * (alpha[j] - ak); a > tol {
 					if d := val[j] - vk; d <= bestRatio*a+1e-9 {
@@ -408,7 +410,7 @@ func (lp *LP) pivot(pos int, up, careful bool) Status {
 			}
 			continue
 		}
-		for _, j := range g.active {
+		for _, j := range active {
 			if int(j) < from {
 				continue
 			}

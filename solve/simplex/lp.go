@@ -11,6 +11,9 @@ type LP struct {
 	sets    []set
 	members [][]int // sets of each group
 
+	active [][]int32 // columns of each group that may be used; nil: all
+	barred [][]bool  // the others
+
 	rows []*Row
 	binv []float64 // m×m: inverse of the working basis
 	base []basic   // one a position
@@ -39,7 +42,8 @@ type set struct {
 // New makes a program without rows. Set i chooses from groups[setGroup[i]]; shapes is
 // the length of every row's R.
 func New(groups []*Group, setGroup []int, shapes int) *LP {
-	lp := &LP{groups: groups, shapes: shapes, sets: make([]set, len(setGroup)), members: make([][]int, len(groups))}
+	lp := &LP{groups: groups, shapes: shapes, sets: make([]set, len(setGroup)), members: make([][]int, len(groups)),
+		active: make([][]int32, len(groups)), barred: make([][]bool, len(groups))}
 	for i, g := range setGroup {
 		lp.sets[i] = set{group: int32(g), off: true, on: true}
 		lp.members[g] = append(lp.members[g], i)
@@ -54,6 +58,28 @@ func New(groups []*Group, setGroup []int, shapes int) *LP {
 // Load before the next Solve.
 func (lp *LP) Allow(set int, off, on bool) {
 	lp.sets[set].off, lp.sets[set].on = off, on
+}
+
+// Use bars every column of a group but those listed, column 0 among them where it is
+// "off"; nil frees all. Call Reset or Load before the next Solve.
+func (lp *LP) Use(group int, columns []int32) {
+	lp.active[group] = columns
+	if columns == nil {
+		return
+	}
+	n := len(lp.groups[group].Cols)
+	b := lp.barred[group]
+	if cap(b) < n {
+		b = make([]bool, n, 2*n)
+	}
+	b = b[:n]
+	for j := range b {
+		b[j] = true
+	}
+	for _, j := range columns {
+		b[j] = false
+	}
+	lp.barred[group] = b
 }
 
 // Rows lists the rows in the order of Duals.
@@ -221,7 +247,7 @@ func (lp *LP) allowed(s *set, j int32) bool {
 	if !s.on {
 		return false
 	}
-	return g.usable(j)
+	return lp.active[s.group] == nil || int(j) < len(lp.barred[s.group]) && !lp.barred[s.group][j]
 }
 
 // relative is the coefficient in row r of a basic variable, its set's key taken off.

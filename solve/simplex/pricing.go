@@ -53,14 +53,14 @@ func (v *pricing) run(lp *LP, vector []float64, withCost float64) {
 			val = make([]float64, len(group.Cols), 2*len(group.Cols))
 			v.val[g] = val
 		}
-		if group.active == nil {
+		if lp.active[g] == nil {
 			for j := range group.Cols {
 				c := &group.Cols[j]
 				val[j] = withCost*c.Cost - (gp*c.P + ge*c.E + gr*c.R)
 			}
 			continue
 		}
-		for _, j := range group.active {
+		for _, j := range lp.active[g] {
 			c := &group.Cols[j]
 			val[j] = withCost*c.Cost - (gp*c.P + ge*c.E + gr*c.R)
 		}
@@ -79,7 +79,7 @@ func (v *pricing) run(lp *LP, vector []float64, withCost float64) {
 
 func (v *pricing) one(lp *LP, g int, j int32, p, e, withCost float64) {
 	group := lp.groups[g]
-	if group.active == nil {
+	if lp.active[g] == nil {
 		return
 	}
 	gr := -v.x[g]

@@ -11,32 +11,7 @@ type Group struct {
 	Shape  int      // which of a row's R coefficients holds for R; −1: none
 	HasOff bool     // column 0 is "off"
 	Cols   []Column // append only
-
-	active []int32 // columns that may be used, column 0 included; nil: all
-	barred []bool  // the others
 }
-
-// Use bars every column of the group but those listed; nil frees all. Call Reset or
-// Load on every program over the group before its next Solve.
-func (g *Group) Use(columns []int32) {
-	g.active = columns
-	if columns == nil {
-		return
-	}
-	if cap(g.barred) < len(g.Cols) {
-		g.barred = make([]bool, len(g.Cols), 2*len(g.Cols))
-	}
-	g.barred = g.barred[:len(g.Cols)]
-	for j := range g.barred {
-		g.barred[j] = true
-	}
-	for _, j := range columns {
-		g.barred[j] = false
-	}
-}
-
-// usable tells whether the group allows a column.
-func (g *Group) usable(j int32) bool { return g.active == nil || !g.barred[j] }
 
 // Row is one coupling row: Σ (P·p + E·e + R[shape]·r) − own parts ≥ RHS.
 type Row struct {
@@ -89,6 +64,16 @@ type Basis struct {
 	keys   []int32
 	rows   []*Row
 	basics []basic
+}
+
+// WithRows is the snapshot with other rows in the place of its own, one for each; their
+// coefficients must be the same, right-hand sides may differ.
+func (b *Basis) WithRows(other func(*Row) *Row) *Basis {
+	c := &Basis{keys: b.keys, basics: b.basics, rows: make([]*Row, len(b.rows))}
+	for i, r := range b.rows {
+		c.rows[i] = other(r)
+	}
+	return c
 }
 
 // basic is a working basic variable: a surplus (set < 0, col = row) or a column of a set.

@@ -196,7 +196,8 @@ func TestWarmEqualsCold(t *testing.T) {
 				bars = append(bars, bar{s, off, !off})
 			}
 		}
-		for _, g := range gs[:len(gs)-1] {
+		uses := map[int][]int32{}
+		for gi, g := range gs[:len(gs)-1] {
 			if len(g.Cols) > 3 && rng.IntN(3) == 0 {
 				use := []int32{0, 1}
 				for j := 2; j < len(g.Cols); j++ {
@@ -204,7 +205,8 @@ func TestWarmEqualsCold(t *testing.T) {
 						use = append(use, int32(j))
 					}
 				}
-				g.Use(use)
+				warm.Use(gi, use)
+				uses[gi] = use
 			}
 		}
 		for _, b := range bars {
@@ -213,6 +215,9 @@ func TestWarmEqualsCold(t *testing.T) {
 		warm.Load(saved)
 		ws := warm.Solve(math.Inf(1))
 		cold := New(gs, sets, 4)
+		for g, use := range uses {
+			cold.Use(g, use)
+		}
 		for _, b := range bars {
 			cold.Allow(b.set, b.off, b.on)
 		}

@@ -1,0 +1,153 @@
+package formulate
+
+import (
+	"math"
+	"slices"
+
+	"evenkeel/fleet"
+	"evenkeel/limits"
+)
+
+// Problem is one hour: identical units to pick operating points for, and the losses
+// that each limit must hold after.
+type Problem struct {
+	Hour   *fleet.Hour
+	Limits limits.Limits
+	Shapes []limits.Shape
+
+	UnservedPerMWh float64
+	ShortPerMW     float64
+
+	Classes []Class
+	Losses  []Loss
+
+	// DampingA0 is a lower bound of D·f0/(2·E) over every mix that serves the load, 1/s.
+	DampingA0 float64
+	// MostInertiaMWs is the bound of E it comes from.
+	MostInertiaMWs float64
+
+	// WithoutLimits leaves the frequency rows out.
+	WithoutLimits bool
+}
+
+// Class is the identical units of one resource.
+type Class struct {
+	Unit    int // index into Hour.Units
+	Count   int
+	Commit  bool
+	MustRun bool
+	Shape   int // −1: none
+}
+
+// Loss is one loss: FixedMW plus the output of what it takes with it.
+type Loss struct {
+	Name    string
+	FixedMW float64
+	Classes []int // indices into Problem.Classes
+	Single  bool  // one unit of Classes[0]; otherwise all units of each
+}
+
+// Commits tells whether the size of the loss hangs on a commitment.
+func (l *Loss) Commits(p *Problem) bool {
+	for _, c := range l.Classes {
+		if p.Classes[c].Commit {
+			return true
+		}
+	}
+	return false
+}
+
+// Build makes the problem of one hour of a case.
+func Build(c *fleet.Case, h *fleet.Hour) *Problem {
+	p := &Problem{
+		Hour: h, Limits: c.Limits,
+		UnservedPerMWh: c.UnservedPerMWh, ShortPerMW: c.ShortPerMW,
+	}
+	for _, s := range c.Shapes {
+		p.Shapes = append(p.Shapes, s.Shape)
+	}
+	class := make([]int, len(h.Units))
+	for i := range h.Units {
+		u := &h.Units[i]
+		class[i] = -1
+		if u.Count <= 0 {
+			continue
+		}
+		class[i] = len(p.Classes)
+		shape := u.Shape
+		if u.ResponseCapMW <= 0 {
+			shape = -1
+		}
+		p.Classes = append(p.Classes, Class{Unit: i, Count: u.Count, Commit: u.Commit, MustRun: u.MustRun, Shape: shape})
+	}
+	for _, l := range h.Losses {
+		var members []int
+		for _, m := range l.Members {
+			if class[m] >= 0 {
+				members = append(members, class[m])
+			}
+		}
+		if len(members) == 0 && l.FixedMW <= 0 {
+			continue
+		}
+		p.Losses = append(p.Losses, Loss{Name: l.Name, FixedMW: l.FixedMW, Classes: members, Single: l.Single})
+	}
+	p.MostInertiaMWs = mostInertia(h)
+	p.DampingA0 = h.DampingMWPerHz * c.Limits.NominalHz / (2 * p.MostInertiaMWs)
+	if p.MostInertiaMWs <= 0 {
+		p.DampingA0 = 0
+	}
+	return p
+}
+
+// mostInertia bounds the kinetic energy that any mix can have online: what runs at its
+// minimum must fit under the load, so machines are taken in order of kinetic energy per
+// MW of minimum output until it is reached, the last one in part. Converters' exports
+// and machines that consume make room.
+func mostInertia(h *fleet.Hour) float64 {
+	type item struct{ e, minMW float64 }
+	total := h.LoadInertiaMWs
+	room := h.DemandMW
+	var items []item
+	for i := range h.Units {
+		u := &h.Units[i]
+		n := float64(max(u.Count, 0))
+		total += n * u.SyntheticCapMWs
+		switch {
+		case n == 0:
+		case !u.Commit:
+			total += n * u.InertiaMWs
+			room -= n * min(u.MinMW, 0)
+			if u.MinMW > 0 {
+				room -= n * u.MinMW
+			}
+		case u.MustRun || u.MinMW <= 0:
+			total += n * u.InertiaMWs
+			room -= n * u.MinMW
+		case u.InertiaMWs > 0:
+			items = append(items, item{n * u.InertiaMWs, n * u.MinMW})
+		}
+	}
+	slices.SortStableFunc(items, func(a, b item) int {
+		return -cmpFloat(a.e*b.minMW, b.e*a.minMW)
+	})
+	for _, it := range items {
+		if room <= 0 {
+			break
+		}
+		share := math.Min(1, room/it.minMW)
+		total += share * it.e
+		room -= share * it.minMW
+	}
+	return total
+}
+
+func cmpFloat(a, b float64) int {
+	switch {
+	case a < b:
+		return -1
+	case a > b:
+		return 1
+	}
+	return 0
+}

@@ -1,0 +1,203 @@
+package solve
+
+import (
+	"math"
+
+	"evenkeel/formulate"
+	"evenkeel/limits"
+	"evenkeel/solve/simplex"
+)
+
+// master is the hour's columns and sets, shared by all its linear programs.
+type master struct {
+	p      *formulate.Problem
+	groups []*simplex.Group // one a class, then unserved load, then a shortfall for each limit
+	sets   []int            // group of each set
+	first  []int            // first set of each class; its units follow
+	most   []float64        // most that one unit of each class can put out
+
+	recovers []bool // shapes that draw power at some time
+
+	unserved int
+	short    [limits.Kinds]int
+	shortMW  float64 // most that a limit can be short
+
+	base [][]int32             // columns without a cap, one list a group
+	caps map[float64][][]int32 // columns under a cap
+}
+
+func newMaster(p *formulate.Problem) *master {
+	m := &master{p: p, caps: map[float64][][]int32{}}
+	shapes := len(p.Shapes)
+	for c := range p.Classes {
+		cl := &p.Classes[c]
+		u := &p.Hour.Units[cl.Unit]
+		points := formulate.Points(u, math.Inf(1))
+		g := &simplex.Group{Shape: cl.Shape}
+		if cl.Commit || len(points) == 0 {
+			g.HasOff = true
+			g.Cols = append(g.Cols, simplex.Column{})
+		}
+		for _, pt := range points {
+			g.Cols = append(g.Cols, column(pt))
+		}
+		m.first = append(m.first, len(m.sets))
+		for range cl.Count {
+			m.sets = append(m.sets, len(m.groups))
+		}
+		m.groups = append(m.groups, g)
+		m.most = append(m.most, u.MaxMW)
+	}
+	for _, s := range p.Shapes {
+		m.recovers = append(m.recovers, s.Recovery())
+	}
+	m.shortMW = 1
+	for k := range p.Losses {
+		m.shortMW = max(m.shortMW, m.possible(k))
+	}
+	// Load not served also takes its damping along: the shape after the real ones.
+	m.unserved = len(m.sets)
+	demand := max(p.Hour.DemandMW, 0)
+	m.sets = append(m.sets, len(m.groups))
+	m.groups = append(m.groups, &simplex.Group{Shape: shapes, HasOff: true, Cols: []simplex.Column{
+		{}, {Cost: demand * p.UnservedPerMWh, P: demand, R: demand}}})
+	for k := range m.short {
+		m.short[k] = len(m.sets)
+		m.sets = append(m.sets, len(m.groups))
+		m.groups = append(m.groups, &simplex.Group{Shape: shapes + 1 + k, HasOff: true, Cols: []simplex.Column{
+			{}, {Cost: 2 * m.shortMW * p.ShortPerMW, R: 2 * m.shortMW}}})
+	}
+	for _, g := range m.groups {
+		list := make([]int32, len(g.Cols))
+		for j := range list {
+			list[j] = int32(j)
+		}
+		m.base = append(m.base, list)
+	}
+	return m
+}
+
+func column(pt formulate.Point) simplex.Column {
+	return simplex.Column{Cost: pt.Cost, P: pt.OutputMW, E: pt.InertiaMWs, R: pt.ResponseMW}
+}
+
+// rowShapes is the length of a row's R: the shapes, unserved load, shortfalls.
+func (m *master) rowShapes() int { return len(m.p.Shapes) + 1 + limits.Kinds }
+
+// possible is the most that a loss can be.
+func (m *master) possible(k int) float64 {
+	l := &m.p.Losses[k]
+	mw := l.FixedMW
+	for _, c := range l.Classes {
+		most := max(m.most[c], 0)
+		if !l.Single {
+			most *= float64(m.p.Classes[c].Count)
+		}
+		mw += most
+	}
+	return mw
+}
+
+// use bars the columns above capMW of classes whose loss hangs on a commitment.
+func (m *master) use(lp *simplex.LP, capMW float64) {
+	lists, ok := m.caps[capMW]
+	if !ok {
+		lists = make([][]int32, len(m.groups))
+		capped := make([]bool, len(m.groups))
+		for k := range m.p.Losses {
+			if l := &m.p.Losses[k]; l.Single && l.Commits(m.p) {
+				capped[l.Classes[0]] = true
+			}
+		}
+		for g := range m.groups {
+			lists[g] = m.base[g]
+			if capped[g] && m.most[g] > capMW {
+				lists[g] = m.under(g, capMW)
+			}
+		}
+		m.caps[capMW] = lists
+	}
+	for g := range m.groups {
+		lp.Use(g, lists[g])
+	}
+}
+
+// under lists the columns of a class under a cap, adding those at the cap itself.
+func (m *master) under(g int, capMW float64) []int32 {
+	group := m.groups[g]
+	list := []int32{0}
+	for _, pt := range formulate.Points(&m.p.Hour.Units[m.p.Classes[g].Unit], capMW) {
+		c := column(pt)
+		at := int32(-1)
+		for j := 1; j < len(group.Cols); j++ {
+			if group.Cols[j] == c {
+				at = int32(j)
+				break
+			}
+		}
+		if at < 0 {
+			at = int32(len(group.Cols))
+			group.Cols = append(group.Cols, c)
+		}
+		list = append(list, at)
+	}
+	return list
+}
+
+// balance is the row of the power balance: load not served counts as output, output
+// above the load costs as much as load not served.
+func (m *master) balance() *simplex.Row {
+	return &simplex.Row{P: 1, R: make([]float64, m.rowShapes()), RHS: m.p.Hour.DemandMW, SurplusCost: m.p.UnservedPerMWh}
+}
+
+// rowTag is what a simplex row remembers of its origin.
+type rowTag struct {
+	row     formulate.Row
+	average int  // units that a single loss is averaged over
+	cap     bool // not a limit: the cap of a loss on several resources
+}
+
+// roundingShare of the largest possible loss is added to every frequency row, so that
+// what the rows hold by rounding is still inside the corridor.
+const roundingShare = 1e-7
+
+// row makes the simplex row of a frequency row. A class that loses one of several
+// identical units loses the average of the most units that may be on: n units on at
+// their average point are as good as any n, and the average over more units is less.
+func (m *master) row(r formulate.Row, average int, inertiaAtLeast float64) *simplex.Row {
+	p := m.p
+	shapes := len(p.Shapes)
+	row := &simplex.Row{E: r.InertiaPerMWs, R: make([]float64, m.rowShapes()), Tag: &rowTag{row: r, average: average}}
+	copy(row.R, r.Response)
+	row.R[shapes] = -r.DampingShare
+	row.R[shapes+1+int(r.At.Kind)] = 1
+	row.RHS = r.MW + roundingShare*m.shortMW - r.InertiaPerMWs*p.Hour.LoadInertiaMWs - r.DampingMW
+	if r.Loss == formulate.AnyLoss {
+		row.RHS += r.InertiaPerMWs * inertiaAtLeast
+		return row
+	}
+	l := &p.Losses[r.Loss]
+	row.RHS += l.FixedMW
+	for _, c := range l.Classes {
+		share := 1.0
+		if l.Single {
+			share = 1 / float64(average)
+		}
+		own := simplex.Own{Group: c, P: share, E: share * r.InertiaPerMWs}
+		if s := p.Classes[c].Shape; s >= 0 {
+			own.R = share * r.Response[s]
+		}
+		row.Own = append(row.Own, own)
+	}
+	return row
+}
+
+// capRow keeps a loss on several resources under a cap.
+func (m *master) capRow(k int, capMW float64) *simplex.Row {
+	l := &m.p.Losses[k]
+	row := &simplex.Row{R: make([]float64, m.rowShapes()), RHS: l.FixedMW - capMW, Tag: &rowTag{cap: true}}
+	for _, c := range l.Classes {
+		row.Own = append(row.Own, simplex.Own{Group: c, P: 1})
+	}
+	return row
+}

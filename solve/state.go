@@ -1,0 +1,152 @@
+package solve
+
+import (
+	"evenkeel/limits"
+	"evenkeel/solve/simplex"
+)
+
+// state is what a solution of a linear program puts into the rows.
+type state struct {
+	inertia  float64   // MW·s, the load's own included
+	response []float64 // MW, one a shape
+	unserved float64
+	short    [limits.Kinds]float64
+	class    []part // all units of each class
+}
+
+// part is what one class puts in.
+type part struct{ on, cost, mw, inertia, response float64 }
+
+func (m *master) measure(lp *simplex.LP, st *state) {
+	if st.class == nil {
+		st.class = make([]part, len(m.p.Classes))
+		st.response = make([]float64, len(m.p.Shapes))
+	}
+	st.inertia = m.p.Hour.LoadInertiaMWs
+	clear(st.response)
+	for c := range m.p.Classes {
+		cl := &m.p.Classes[c]
+		g := m.groups[c]
+		var sum part
+		for i := range cl.Count {
+			lp.Each(m.first[c]+i, func(j int32, x float64) {
+				col := &g.Cols[j]
+				if !g.HasOff || j > 0 {
+					sum.on += x
+				}
+				sum.cost += x * col.Cost
+				sum.mw += x * col.P
+				sum.inertia += x * col.E
+				sum.response += x * col.R
+			})
+		}
+		st.class[c] = sum
+		st.inertia += sum.inertia
+		if cl.Shape >= 0 {
+			st.response[cl.Shape] += sum.response
+		}
+	}
+	st.unserved = lp.Share(m.unserved, 1) * m.groups[m.sets[m.unserved]].Cols[1].P
+	for k, s := range m.short {
+		st.short[k] = lp.Share(s, 1) * m.groups[m.sets[s]].Cols[1].R
+	}
+}
+
+// lost is one loss as it stands in a state.
+type lost struct {
+	loss     int
+	average  int // units that a single loss is averaged over
+	mw       float64
+	inertia  float64
+	response []lostResponse
+}
+
+type lostResponse struct {
+	shape int
+	mw    float64
+}
+
+// losses lists the losses of a state that no other one is worse than in every respect.
+// units is the most units of each class that may be on.
+func (m *master) losses(st *state, units []int, out []lost) []lost {
+	out = out[:0]
+	for k := range m.p.Losses {
+		l := &m.p.Losses[k]
+		v := lost{loss: k, average: 1, mw: l.FixedMW}
+		if len(out) < cap(out) { // keep the old slice's memory
+			v.response = out[:len(out)+1][len(out)].response[:0]
+		}
+		for _, c := range l.Classes {
+			part := &st.class[c]
+			share := 1.0
+			if l.Single {
+				if units[c] == 0 {
+					continue
+				}
+				v.average = units[c]
+				share = 1 / float64(units[c])
+			}
+			v.mw += share * part.mw
+			v.inertia += share * part.inertia
+			if s := m.p.Classes[c].Shape; s >= 0 && part.response > 0 {
+				v.response = append(v.response, lostResponse{s, share * part.response})
+			}
+		}
+		if v.mw <= 0 {
+			continue
+		}
+		out = append(out, v)
+	}
+	// Dropping the dominated ones swaps, so the order is fixed first: largest first.
+	sortLosses(out)
+	n := 0
+	for i := range out {
+		dominated := false
+		for j := 0; j < n && !dominated; j++ {
+			dominated = out[j].atLeast(&out[i], m.recovers)
+		}
+		if !dominated {
+			out[n], out[i] = out[i], out[n]
+			n++
+		}
+	}
+	return out[:n]
+}
+
+// sortLosses puts the largest first, equal ones by their index.
+func sortLosses(l []lost) {
+	for i := 1; i < len(l); i++ {
+		for j := i; j > 0 && (l[j].mw > l[j-1].mw || l[j].mw == l[j-1].mw && l[j].loss < l[j-1].loss); j-- {
+			l[j], l[j-1] = l[j-1], l[j]
+		}
+	}
+}
+
+// atLeast tells whether v is at least as bad as w at every instant. A lost response that
+// would have drawn power later is only comparable with the same.
+func (v *lost) atLeast(w *lost, recovers []bool) bool {
+	if v.mw < w.mw || v.inertia < w.inertia {
+		return false
+	}
+	for _, b := range w.response {
+		if have := v.of(b.shape); have < b.mw {
+			return false
+		}
+	}
+	for _, a := range v.response {
+		if recovers[a.shape] && w.of(a.shape) != a.mw {
+			return false
+		}
+	}
+	return true
+}
+
+func (v *lost) of(shape int) float64 {
+	mw := 0.0
+	for _, a := range v.response {
+		if a.shape == shape {
+			mw += a.mw
+		}
+	}
+	return mw
+}
