@@ -54,7 +54,7 @@ func Points(u *fleet.Unit, capMW float64) []Point {
 		visit((u.HeadMW - synth) / (1 + head*share))
 	}
 	slices.Sort(outputs)
-	outputs = slices.CompactFunc(outputs, func(a, b float64) bool { return b-a < eps })
+	outputs = slices.CompactFunc(outputs, func(a, b float64) bool { return math.Abs(b-a) < eps })
 
 	var points []Point
 	for _, p := range outputs {

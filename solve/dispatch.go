@@ -15,13 +15,14 @@ func (s *search) round(n *node, units []float64) {
 		for c, x := range units {
 			counts[c] = min(max(int(math.Floor(x+up)), n.lo[c]), n.hi[c])
 		}
-		s.dispatch(counts, n.basis)
+		s.dispatch(counts, n.basis, n.capped)
 	}
 }
 
 // dispatch finds the cheapest mix under a commitment, exactly, and keeps it if it is the
-// best so far.
-func (s *search) dispatch(counts []int, from *simplex.Basis) {
+// best so far. A basis that was found under a cap of the largest loss is not dual
+// feasible without it, so then only its rows are taken over.
+func (s *search) dispatch(counts []int, from *simplex.Basis, capped bool) {
 	s.key = s.key[:0]
 	for _, k := range counts {
 		s.key = append(s.key, byte(k), byte(k>>8))
@@ -31,8 +32,18 @@ func (s *search) dispatch(counts []int, from *simplex.Basis) {
 	}
 	s.tried[string(s.key)] = struct{}{}
 	s.nodes++
-	n := &node{lo: counts, hi: counts, high: math.Inf(1), basis: from.WithRows(loosen)}
+	n := &node{lo: counts, hi: counts, high: math.Inf(1)}
+	if !capped {
+		n.basis = from.WithRows(loosen)
+	}
 	s.load(s.fix, n)
+	if capped {
+		for _, r := range from.Rows()[1:] {
+			if loosen(r) == r {
+				s.fix.AddRow(r)
+			}
+		}
+	}
 	tol := 0.9 * roundingShare * s.m.shortMW
 	for {
 		if st := s.fix.Solve(s.best); st != simplex.Optimal {

@@ -112,7 +112,7 @@ func bruteForce(p *formulate.Problem) float64 {
 	s.lp.Solve(math.Inf(1))
 	from := s.lp.Save()
 	for {
-		s.dispatch(counts, from)
+		s.dispatch(counts, from, false)
 		c := 0
 		for ; c < n; c++ {
 			if counts[c] < hi[c] {

@@ -4,6 +4,7 @@ import (
 	"container/heap"
 	"context"
 	"math"
+	"slices"
 
 	"evenkeel/formulate"
 	"evenkeel/solve/simplex"
@@ -65,6 +66,7 @@ type node struct {
 	bound     float64
 	basis     *simplex.Basis
 	caps      []*simplex.Row
+	capped    bool // high is below what losses can be
 	seq       int
 }
 
@@ -92,8 +94,8 @@ func newSearch(p *formulate.Problem, opt Options) *search {
 	return s
 }
 
-// run searches until the gap is closed. It reports the context's error if interrupted.
-func (s *search) run(ctx context.Context) error {
+// root is the whole hour.
+func (s *search) root() *node {
 	p := s.m.p
 	root := &node{lo: make([]int, len(p.Classes)), hi: make([]int, len(p.Classes)), bound: math.Inf(-1)}
 	for c := range p.Classes {
@@ -111,6 +113,12 @@ func (s *search) run(ctx context.Context) error {
 			root.high = max(root.high, s.m.possible(k))
 		}
 	}
+	return root
+}
+
+// run searches until the gap is closed. It reports the context's error if interrupted.
+func (s *search) run(ctx context.Context) error {
+	root := s.root()
 	heap.Push(&s.open, root)
 	limit := s.opt.NodeLimit
 	if limit == 0 {
@@ -257,7 +265,7 @@ func (s *search) units() []float64 {
 
 // tighten drops unit counts whose reduced cost alone exceeds what is left to gain.
 func (s *search) tighten(n *node) {
-	gap := s.cutoff() - n.bound
+	gap := s.cutoff() - s.lp.Objective()
 	if math.IsInf(gap, 1) {
 		return
 	}
@@ -333,12 +341,10 @@ func (s *search) splitLoss(n *node, cover, whole float64) {
 	at = min(max(at, n.low+0.1*width), n.high-0.1*width)
 	low := *n
 	low.high = at
-	for k := range s.m.p.Losses {
-		if l := &s.m.p.Losses[k]; l.Commits(s.m.p) && !l.Single && s.m.possible(k) > at {
-			low.caps = append(low.caps, s.m.capRow(k, at))
-		}
-	}
+	low.capped = true
+	low.caps = s.capRows(at)
 	high := *n
+	low.lo, low.hi = slices.Clone(n.lo), slices.Clone(n.hi) // tightened apart from here on
 	high.low = at
 	s.push(&low)
 	s.push(&high)

@@ -66,6 +66,9 @@ type Basis struct {
 	basics []basic
 }
 
+// Rows lists the rows of the snapshot.
+func (b *Basis) Rows() []*Row { return b.rows }
+
 // WithRows is the snapshot with other rows in the place of its own, one for each; their
 // coefficients must be the same, right-hand sides may differ.
 func (b *Basis) WithRows(other func(*Row) *Row) *Basis {

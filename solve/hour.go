@@ -1,0 +1,256 @@
+package solve
+
+import (
+	"context"
+	"fmt"
+	"math"
+	"strings"
+
+	"evenkeel/fleet"
+	"evenkeel/formulate"
+	"evenkeel/limits"
+	"evenkeel/limits/replay"
+	"evenkeel/solve/simplex"
+)
+
+// Solver solves the hours of one case. It is safe for concurrent use.
+type Solver struct {
+	c    *fleet.Case
+	opt  Options
+	sys  *replay.System
+	fast []bool // shapes fully out within FastS
+}
+
+// New prepares the hours of a case.
+func New(c *fleet.Case, opt Options) *Solver {
+	s := &Solver{c: c, opt: opt}
+	var shapes [][]replay.Knot
+	for _, n := range c.Shapes {
+		var knots []replay.Knot
+		for _, k := range n.Shape.Knots() {
+			knots = append(knots, replay.Knot{S: k.S, Share: k.Share})
+		}
+		shapes = append(shapes, knots)
+		s.fast = append(s.fast, n.Shape.FullActivationS() <= FastS)
+	}
+	l := c.Limits
+	s.sys = replay.NewSystem(replay.Limits{NominalHz: l.NominalHz, WindowS: l.WindowS, SteadyByS: l.SteadyByS, SteadyUntilS: l.SteadyUntilS}, shapes)
+	return s
+}
+
+const (
+	shortTolMW  = 1e-4 // a shortfall below this is rounding
+	replayTolHz = 1e-6 // by which a replayed value may pass its limit by rounding
+)
+
+// Hour finds, prices and replays the mix of one hour. The only error is the context's.
+func (s *Solver) Hour(ctx context.Context, h *fleet.Hour) (Hour, error) {
+	p := formulate.Build(s.c, h)
+	p.WithoutLimits = s.opt.WithoutLimits
+	for {
+		q := newSearch(p, s.opt)
+		if err := q.run(ctx); err != nil {
+			return Hour{}, err
+		}
+		st, excess := q.mix()
+		// The damping bound supposes that the load is served and the balance met.
+		if p.DampingA0 > 0 && !p.WithoutLimits && (st.unserved > shortTolMW || excess > shortTolMW) {
+			p.DampingA0 = 0
+			continue
+		}
+		out := s.describe(q, &st, excess)
+		if !p.WithoutLimits {
+			s.price(q, &st, &out)
+		}
+		s.replay(q, &st, &out)
+		out.Effort = Effort{Nodes: q.nodes, Pivots: q.lp.Pivots + q.fix.Pivots, Rows: len(q.sep.order)}
+		return out, nil
+	}
+}
+
+// mix goes back to the incumbent and measures it.
+func (s *search) mix() (state, float64) {
+	n := &node{lo: s.commit, hi: s.commit, high: math.Inf(1), basis: s.basis}
+	s.load(s.fix, n)
+	s.fix.Solve(math.Inf(1))
+	var st state
+	s.m.measure(s.fix, &st)
+	excess := st.unserved - s.m.p.Hour.DemandMW
+	for _, c := range st.class {
+		excess += c.mw
+	}
+	return st, excess
+}
+
+func (s *Solver) describe(q *search, st *state, excess float64) Hour {
+	p := q.m.p
+	h := p.Hour
+	out := Hour{
+		Index: h.Index, Time: h.Time, Cost: q.best, Bound: min(q.bound(), q.best),
+		DemandMW: h.DemandMW, UnservedMW: clip(st.unserved), ExcessMW: clip(excess),
+		InertiaMWs: st.inertia, Dispatch: make([]Dispatch, len(h.Units)),
+	}
+	if out.Cost != 0 {
+		out.Gap = (out.Cost - out.Bound) / math.Abs(out.Cost)
+	}
+	for c := range p.Classes {
+		cl := &p.Classes[c]
+		u := &h.Units[cl.Unit]
+		part := &st.class[c]
+		d := &out.Dispatch[cl.Unit]
+		*d = Dispatch{On: q.commit[c], OutputMW: part.mw, ResponseMW: part.response, InertiaMWs: part.inertia, Cost: part.cost, CO2T: part.mw * u.CO2TPerMWh}
+		if u.Renewable {
+			d.CurtailedMW = clip(float64(cl.Count)*u.MaxMW - part.mw)
+		}
+		out.CurtailedMW += d.CurtailedMW
+		out.CO2T += d.CO2T
+		if cl.Shape >= 0 && s.fast[cl.Shape] {
+			out.FastMW += part.response
+		} else {
+			out.PrimaryMW += part.response
+		}
+	}
+	for k := range out.Limits {
+		out.Limits[k].ShortMW = clip(st.short[k])
+	}
+	return out
+}
+
+func clip(mw float64) float64 {
+	if mw < shortTolMW {
+		return 0
+	}
+	return mw
+}
+
+// price reads the prices of an hour off the relaxation with the size of the largest
+// loss held at that of the mix.
+func (s *Solver) price(q *search, st *state, out *Hour) {
+	p := q.m.p
+	root := q.root()
+	held := 0.0
+	for k := range p.Losses {
+		l := &p.Losses[k]
+		if !l.Commits(p) {
+			continue
+		}
+		mw := l.FixedMW
+		for _, c := range l.Classes {
+			if n := q.commit[c]; l.Single && n > 0 {
+				mw += st.class[c].mw / float64(n)
+			} else if !l.Single {
+				mw += st.class[c].mw
+			}
+		}
+		held = max(held, mw)
+	}
+	if held > 0 {
+		root.low, root.high = held, held*(1+1e-9)
+		root.caps = q.capRows(root.high)
+	}
+	q.best = math.Inf(1) // no cutoff: the relaxation is wanted whole
+	q.relax(root)
+	out.Prices.ResponsePerMW = make([]float64, len(p.Shapes))
+	for i, r := range q.lp.Rows() {
+		y := q.lp.Duals()[i]
+		tag, ok := r.Tag.(*rowTag)
+		if !ok {
+			out.Prices.EnergyPerMWh = y
+			continue
+		}
+		if tag.cap || y <= 1e-9 {
+			continue
+		}
+		out.Prices.LossPerMW += y
+		out.Prices.InertiaPerMWs += y * tag.row.InertiaPerMWs
+		for k, v := range tag.row.Response {
+			out.Prices.ResponsePerMW[k] += y * v
+		}
+		left := st.inertia
+		for _, o := range r.Own {
+			if tag.row.InertiaPerMWs > 0 {
+				left -= o.E / tag.row.InertiaPerMWs * st.class[o.Group].inertia
+			}
+		}
+		l := &out.Limits[tag.row.At.Kind]
+		l.Binds = true
+		l.Price += y * (tag.row.HzPerInertia*left + tag.row.HzDamping)
+	}
+}
+
+// replay puts the mix through every loss in the time domain.
+func (s *Solver) replay(q *search, st *state, out *Hour) {
+	p := q.m.p
+	limit := [limits.Kinds]float64{p.Limits.MaxHzPerS, p.Limits.NadirHz, p.Limits.SteadyHz}
+	damping := p.Hour.DampingMWPerHz
+	if p.Hour.DemandMW > 0 {
+		damping *= 1 - out.UnservedMW/p.Hour.DemandMW
+	}
+	var worst [limits.Kinds]float64
+	for k := range p.Losses {
+		l := &p.Losses[k]
+		mw, left := l.FixedMW, st.inertia
+		response := append([]float64(nil), st.response...)
+		for _, c := range l.Classes {
+			share := 1.0
+			if l.Single {
+				if q.commit[c] == 0 {
+					continue
+				}
+				share = 1 / float64(q.commit[c])
+			}
+			part := &st.class[c]
+			mw += share * part.mw
+			left -= share * part.inertia
+			if sh := p.Classes[c].Shape; sh >= 0 {
+				response[sh] -= share * part.response
+			}
+		}
+		if mw <= 0 {
+			continue
+		}
+		o := s.sys.Run(replay.Event{LossMW: mw, InertiaMWs: left, DampingMWPerHz: damping, ResponseMW: response})
+		for kind, v := range [limits.Kinds]float64{o.RoCoFHzPerS, o.NadirHz, o.SteadyHz} {
+			if v > worst[kind] {
+				worst[kind] = v
+				out.Limits[kind].Loss = l.Name
+				if limits.Kind(kind) == limits.Nadir {
+					out.WorstLoss, out.WorstLossMW, out.InertiaLeftMWs, out.NadirS = l.Name, mw, left, o.NadirS
+				}
+			}
+		}
+	}
+	out.RoCoFHzPerS, out.NadirHz, out.SteadyHz = worst[limits.RoCoF], worst[limits.Nadir], worst[limits.Steady]
+	var why []string
+	for kind := range out.Limits {
+		l := &out.Limits[kind]
+		l.Margin = limit[kind] - worst[kind]
+		name := limits.Kind(kind).String()
+		switch {
+		case l.ShortMW > 0:
+			why = append(why, fmt.Sprintf("%s short by %.1f MW of the loss", name, l.ShortMW))
+		case !(l.Margin >= -replayTolHz):
+			why = append(why, fmt.Sprintf("%s passes its limit by %.4f in the replay", name, -l.Margin))
+		}
+	}
+	if out.UnservedMW > 0 {
+		why = append(why, fmt.Sprintf("%.1f MW of load not served", out.UnservedMW))
+	}
+	if out.ExcessMW > 0 {
+		why = append(why, fmt.Sprintf("%.1f MW of output above the load", out.ExcessMW))
+	}
+	if len(why) > 0 {
+		out.Status, out.Why = Short, strings.Join(why, "; ")
+	}
+}
+
+// capRows keeps every loss on several resources under a cap that it could pass.
+func (s *search) capRows(capMW float64) []*simplex.Row {
+	var rows []*simplex.Row
+	for k := range s.m.p.Losses {
+		if l := &s.m.p.Losses[k]; l.Commits(s.m.p) && !l.Single && s.m.possible(k) > capMW {
+			rows = append(rows, s.m.capRow(k, capMW))
+		}
+	}
+	return rows
+}
