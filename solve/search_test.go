@@ -11,7 +11,6 @@ import (
 
 // The search must find what trying every commitment finds.
 func TestSearchAgainstEnumeration(t *testing.T) {
-	t.Skip("known defect: in 7 of 60 hours search and enumeration differ by up to 2 %; see DEVELOPERS.md")
 	for seed := uint64(0); seed < 60; seed++ {
 		rng := rand.New(rand.NewPCG(seed, 7))
 		c, h := randomHour(rng, 5+rng.IntN(4))
@@ -22,7 +21,9 @@ func TestSearchAgainstEnumeration(t *testing.T) {
 			if err := s.run(context.Background()); err != nil {
 				t.Fatal(err)
 			}
-			slack := 1e-6 * (1 + math.Abs(want))
+			// Rows are met to within roundingShare of the largest loss; no MW of a loss is
+			// dearer than the price of a shortfall.
+			slack := 1e-7*(1+math.Abs(want)) + 2*roundingShare*s.m.shortMW*p.ShortPerMW
 			if s.best < want-slack || s.best > want+max(gap, 1e-7)*math.Abs(s.best)+slack {
 				t.Errorf("seed %d gap %g: cost %.8g, enumeration %.8g", seed, gap, s.best, want)
 			}

@@ -130,11 +130,23 @@ func (s *separator) worst(st *state, v *lost, out *[limits.Worsts]limits.Worst) 
 	for _, r := range v.response {
 		s.response[r.shape] -= r.mw
 	}
-	s.scan.Worst(v.mw, max(st.inertia-v.inertia, 0), s.response, out)
-	p := s.m.p
-	for k := range out {
-		out[k].ExcessMW -= st.short[out[k].At.Kind]
+	left := max(st.inertia-v.inertia, 0)
+	s.scan.Worst(v.mw, left, s.response, out)
+	// A shortfall makes the loss smaller for its limit. The instant that is worst then is
+	// not the one that is worst for the whole loss.
+	for kind, short := range st.short {
+		if short <= 0 {
+			continue
+		}
+		var less [limits.Worsts]limits.Worst
+		s.scan.Worst(v.mw-short, left, s.response, &less)
+		for k := range out {
+			if int(out[k].At.Kind) == kind {
+				out[k] = less[k]
+			}
+		}
 	}
+	p := s.m.p
 	if p.Hour.DemandMW > 0 {
 		out[limits.WorstBalance].ExcessMW += p.Limits.SteadyHz * p.Hour.DampingMWPerHz * st.unserved / p.Hour.DemandMW
 	}
