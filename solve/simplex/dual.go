@@ -5,6 +5,7 @@ import "math"
 const (
 	tolShare   = 1e-9  // of a column's weight below zero
 	tolSurplus = 1e-9  // of a row's surplus below zero, relative to the row's scale
+	tolDual    = 1e-7  // of a reduced cost below zero, relative to the costs it comes from
 	tolPivot   = 1e-9  // smallest pivot, relative to the row of the tableau
 	refresh    = 60    // pivots between inversions
 	pivotLimit = 20000 // of one solve
@@ -18,28 +19,33 @@ func (lp *LP) Solve(cutoff float64) Status {
 	if !lp.settle() {
 		return Infeasible
 	}
-	sincePivot := 0
+	sincePivot, restarted := 0, false
 	for n := 0; ; n++ {
 		if n >= pivotLimit {
 			return Stalled
 		}
-		if sincePivot >= refresh {
+		pos, up := lp.leaving()
+		done := pos < 0 || lp.obj >= cutoff
+		if sincePivot >= refresh || done && sincePivot > 0 {
+			// Only a fresh inverse may say that the end is reached.
 			sincePivot = 0
-			if !lp.invert() {
-				lp.Restart()
-				lp.values()
-				lp.reprice()
-				if !lp.settle() {
-					return Infeasible
-				}
+			if !lp.invert() && !lp.again() {
+				return Infeasible
 			}
 			lp.values()
 			lp.reprice()
+			continue
+		}
+		if done && !restarted && !lp.dualFeasible() {
+			restarted = true
+			if !lp.again() {
+				return Infeasible
+			}
+			continue
 		}
 		if lp.obj >= cutoff {
 			return Cutoff
 		}
-		pos, up := lp.leaving()
 		if pos < 0 {
 			return Optimal
 		}
@@ -69,6 +75,32 @@ func (lp *LP) Solve(cutoff float64) Status {
 			}
 		}
 	}
+}
+
+// again starts over from the surplus basis; false: some set has no column left.
+func (lp *LP) again() bool {
+	lp.Restart()
+	lp.values()
+	lp.reprice()
+	return lp.settle()
+}
+
+// dualFeasible tells whether no column is worth more than the key of its set.
+func (lp *LP) dualFeasible() bool {
+	for i, r := range lp.rows {
+		if r.SurplusCost+lp.pi[i] < -tolDual*(1+math.Abs(r.SurplusCost)+math.Abs(lp.pi[i])) {
+			return false
+		}
+	}
+	for i := range lp.sets {
+		s := &lp.sets[i]
+		val := lp.price.val[s.group]
+		g := lp.groups[s.group]
+		if k := lp.cheapest(s); k >= 0 && val[k]-val[s.key] < -tolDual*(1+math.Abs(g.Cols[k].Cost)+math.Abs(val[k])) {
+			return false
+		}
+	}
+	return true
 }
 
 // values computes the working basic variables from the inverse.
