@@ -19,6 +19,8 @@ type Solver struct {
 	opt  Options
 	sys  *replay.System
 	fast []bool // shapes fully out within FastS
+
+	noReplay bool // the mix is wanted for its cost alone
 }
 
 // New prepares the hours of a case.
@@ -62,7 +64,9 @@ func (s *Solver) Hour(ctx context.Context, h *fleet.Hour) (Hour, error) {
 		if !p.WithoutLimits {
 			s.price(q, &st, &out)
 		}
-		s.replay(q, &st, &out)
+		if !s.noReplay {
+			s.replay(q, &st, &out)
+		}
 		out.Effort = Effort{Nodes: q.nodes, Pivots: q.lp.Pivots + q.fix.Pivots, Rows: len(q.sep.order)}
 		return out, nil
 	}
