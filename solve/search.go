@@ -4,7 +4,6 @@ import (
 	"container/heap"
 	"context"
 	"math"
-	"slices"
 
 	"evenkeel/formulate"
 	"evenkeel/solve/simplex"
@@ -244,11 +243,7 @@ func (s *search) expand(n *node) {
 		return
 	}
 	s.tighten(n)
-	if cover, whole, ok := s.hiddenLoss(n, units); ok {
-		s.splitLoss(n, cover, whole)
-		return
-	}
-	s.splitUnits(n, units)
+	s.branch(n, units)
 }
 
 // units is how many units of each class are on, in fractions.
@@ -331,52 +326,6 @@ func (s *search) hiddenLoss(n *node, units []float64) (cover, whole float64, ok 
 		}
 	}
 	return cover, whole, ok
-}
-
-// splitLoss splits the interval of the largest loss.
-func (s *search) splitLoss(n *node, cover, whole float64) {
-	width := n.high - n.low
-	at := max(cover, n.low)
-	at += 0.5 * (whole - at)
-	at = min(max(at, n.low+0.1*width), n.high-0.1*width)
-	low := *n
-	low.high = at
-	low.capped = true
-	low.caps = s.capRows(at)
-	high := *n
-	low.lo, low.hi = slices.Clone(n.lo), slices.Clone(n.hi) // tightened apart from here on
-	high.low = at
-	s.push(&low)
-	s.push(&high)
-}
-
-// splitUnits splits the number of units on of the class nearest to a half.
-func (s *search) splitUnits(n *node, units []float64) {
-	at, score := -1, -1.0
-	for c := range units {
-		if n.lo[c] == n.hi[c] {
-			continue
-		}
-		f := units[c] - math.Floor(units[c])
-		d := math.Min(f, 1-f)
-		if d > score {
-			at, score = c, d
-		}
-	}
-	if at < 0 {
-		// Every count is fixed and its dispatch was tried: nothing better is in here.
-		s.prune(max(n.bound, s.best))
-		return
-	}
-	k := int(math.Floor(units[at]))
-	k = min(max(k, n.lo[at]), n.hi[at]-1)
-	down, up := *n, *n
-	down.lo, down.hi = append([]int(nil), n.lo...), append([]int(nil), n.hi...)
-	up.lo, up.hi = append([]int(nil), n.lo...), append([]int(nil), n.hi...)
-	down.hi[at] = k
-	up.lo[at] = k + 1
-	s.push(&down)
-	s.push(&up)
 }
 
 func (s *search) push(n *node) {
