@@ -159,7 +159,7 @@ type rowTag struct {
 
 // roundingShare of the largest possible loss is added to every frequency row, so that
 // what the rows hold by rounding is still inside the corridor.
-const roundingShare = 1e-7
+const roundingShare = 1e-8
 
 // row makes the simplex row of a frequency row. A class that loses one of several
 // identical units loses the average of the most units that may be on: n units on at

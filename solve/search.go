@@ -260,7 +260,7 @@ func (s *search) units() []float64 {
 
 // tighten drops unit counts whose reduced cost alone exceeds what is left to gain.
 func (s *search) tighten(n *node) {
-	gap := s.cutoff() - s.lp.Objective()
+	gap := s.cutoff() - s.lp.Objective() // the node's own bound may be its parent's
 	if math.IsInf(gap, 1) {
 		return
 	}
@@ -277,10 +277,14 @@ func (s *search) tighten(n *node) {
 			}
 			dearOff, dearOn = min(dearOff, off), min(dearOn, on)
 		}
+		lo, hi := n.lo[c], n.hi[c]
 		if dearOff > 1e-9 {
-			n.lo[c] = max(n.lo[c], n.hi[c]-int(min(gap/dearOff, 1e6)))
+			n.lo[c] = max(lo, hi-int(min(gap/dearOff, 1e6)))
 		} else if dearOn > 1e-9 {
-			n.hi[c] = min(n.hi[c], n.lo[c]+int(min(gap/dearOn, 1e6)))
+			n.hi[c] = min(hi, lo+int(min(gap/dearOn, 1e6)))
+		}
+		if lo != n.lo[c] || hi != n.hi[c] {
+			s.prune(s.cutoff()) // what was dropped is proven no better than that
 		}
 	}
 }

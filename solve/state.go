@@ -129,12 +129,12 @@ func (v *lost) atLeast(w *lost, recovers []bool) bool {
 		return false
 	}
 	for _, b := range w.response {
-		if have := v.of(b.shape); have < b.mw {
+		if v.of(b.shape) < w.of(b.shape) { // several of its resources may share a shape
 			return false
 		}
 	}
 	for _, a := range v.response {
-		if recovers[a.shape] && w.of(a.shape) != a.mw {
+		if recovers[a.shape] && w.of(a.shape) != v.of(a.shape) {
 			return false
 		}
 	}
