@@ -28,6 +28,8 @@ type Case struct {
 	Currency string // label only
 	Hash     string // sha256 over the YAML file and every series file, hex
 
+	Files []string // the series files, in the order in which the case names them
+
 	Limits limits.Limits
 
 	UnservedPerMWh float64 // price of load not served

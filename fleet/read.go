@@ -1,5 +1,3 @@
-//go:build reader
-
 package fleet
 
 import (
@@ -35,6 +33,8 @@ const (
 	maxNodes       = 2_000_000
 	maxCaseBytes   = 4 << 20
 	maxSeriesBytes = 256 << 20
+	maxKnots       = 200  // points of one shape
+	maxSeconds     = 3600 // after a loss
 )
 
 // Read reads and vets a case: the YAML file at path and the CSV files it names, whose
@@ -65,6 +65,10 @@ type reader struct {
 	clock     string      // what set them
 	clockLost bool        // what should set them cannot be used
 	hours     *section    // the section that sets them if nothing else does
+
+	index       map[string]int // resources by name
+	shapeIndex  map[string]int // shapes by name
+	shapeInputs []shapeInput   // one a shape
 
 	names  map[string]int // of resources, connections and losses: the line of each
 	c      *Case

@@ -1,5 +1,3 @@
-//go:build reader
-
 package fleet
 
 import (
