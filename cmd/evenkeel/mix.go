@@ -186,16 +186,24 @@ func openRun(f mixFlags, fresh *report.Progress) (*report.Progress, error) {
 	return p, nil
 }
 
+// afterHour, if set, runs after each hour: tests slow a run down with it.
+var afterHour func()
+
 func solveYear(ctx context.Context, c *fleet.Case, p *report.Progress, f mixFlags) error {
 	y := p.Year
-	var step func()
+	step := afterHour
 	if !f.quiet && term.IsTerminal(int(os.Stderr.Fd())) {
 		bar := progressbar.NewOptions(len(y.Solved),
 			progressbar.OptionSetWriter(os.Stderr), progressbar.OptionSetDescription("hours"),
 			progressbar.OptionShowCount(), progressbar.OptionThrottle(100*time.Millisecond),
 			progressbar.OptionClearOnFinish(), progressbar.OptionSetPredictTime(true))
 		_ = bar.Set(y.Done())
-		step = func() { _ = bar.Add(1) }
+		step = func() {
+			_ = bar.Add(1)
+			if afterHour != nil {
+				afterHour()
+			}
+		}
 		defer func() { _ = bar.Finish() }()
 	}
 	return y.Run(ctx, c, p.Options, f.workers, step)
