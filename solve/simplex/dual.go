@@ -57,10 +57,18 @@ func (lp *LP) Solve(cutoff float64) Status {
 			}
 			return Infeasible
 		case Stalled:
-			if sincePivot == 0 {
+			if sincePivot > 0 {
+				sincePivot = refresh
+				continue
+			}
+			// The basis is too near to singular to go on from.
+			if restarted {
 				return Stalled
 			}
-			sincePivot = refresh
+			restarted = true
+			if !lp.again() {
+				return Infeasible
+			}
 			continue
 		}
 		lp.Pivots++
