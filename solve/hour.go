@@ -7,7 +7,6 @@ import (
 	"strings"
 
 	"evenkeel/fleet"
-	"evenkeel/formulate"
 	"evenkeel/limits"
 	"evenkeel/limits/replay"
 	"evenkeel/solve/simplex"
@@ -47,29 +46,20 @@ const (
 
 // Hour finds, prices and replays the mix of one hour. The only error is the context's.
 func (s *Solver) Hour(ctx context.Context, h *fleet.Hour) (Hour, error) {
-	p := formulate.Build(s.c, h)
-	p.WithoutLimits = s.opt.WithoutLimits
-	for {
-		q := newSearch(p, s.opt)
-		if err := q.run(ctx); err != nil {
-			return Hour{}, err
-		}
-		st, excess := q.mix()
-		// The damping bound supposes that the load is served and the balance met.
-		if p.DampingA0 > 0 && !p.WithoutLimits && (st.unserved > shortTolMW || excess > shortTolMW) {
-			p.DampingA0 = 0
-			continue
-		}
-		out := s.describe(q, &st, excess)
-		if !p.WithoutLimits {
-			s.price(q, &st, &out)
-		}
-		if !s.noReplay {
-			s.replay(q, &st, &out)
-		}
-		out.Effort = Effort{Nodes: q.nodes, Pivots: q.lp.Pivots + q.fix.Pivots, Rows: len(q.sep.order)}
-		return out, nil
+	p, q, err := s.search(ctx, h)
+	if err != nil {
+		return Hour{}, err
 	}
+	st, excess := q.mix()
+	out := s.describe(q, &st, excess)
+	if !p.WithoutLimits {
+		s.price(q, &st, &out)
+	}
+	if !s.noReplay {
+		s.replay(q, &st, &out)
+	}
+	out.Effort = Effort{Nodes: q.nodes, Pivots: q.lp.Pivots + q.fix.Pivots, Rows: len(q.sep.order)}
+	return out, nil
 }
 
 // mix goes back to the incumbent and measures it.

@@ -115,7 +115,7 @@ func has(lp *simplex.LP, v violation) bool {
 			continue
 		}
 		a, b := tag.row.At, v.at
-		if a.Kind == b.Kind && a.Balance == b.Balance && math.Abs(a.FromS-b.FromS) < sameS && math.Abs(a.ToS-b.ToS) < sameS &&
+		if a.Kind == b.Kind && a.Balance == b.Balance && a.Before == b.Before && math.Abs(a.FromS-b.FromS) < sameS && math.Abs(a.ToS-b.ToS) < sameS &&
 			(v.lost.loss != formulate.AnyLoss || tag.row.MW >= v.lost.mw) {
 			return true
 		}

@@ -74,7 +74,7 @@ func root() *cobra.Command {
 	cmd.SetFlagErrorFunc(func(c *cobra.Command, err error) error {
 		return bad("%w; see 'evenkeel %s --help'", err, c.Name())
 	})
-	cmd.AddCommand(mixCommand(), vetCommand(), inventCommand())
+	cmd.AddCommand(mixCommand(), vetCommand(), modelCommand(), inventCommand())
 	return cmd
 }
 

@@ -1,0 +1,57 @@
+package solve
+
+import (
+	"context"
+	"fmt"
+	"io"
+	"time"
+
+	"evenkeel/fleet"
+	"evenkeel/formulate"
+	"evenkeel/limits"
+)
+
+// Model writes the whole problem of one hour as MPS: every instant at which the
+// optimiser found a row, and a coarse grid of further ones, for every possible loss.
+func (s *Solver) Model(ctx context.Context, h *fleet.Hour, w io.Writer) error {
+	p, q, err := s.search(ctx, h)
+	if err != nil {
+		return err
+	}
+	comments := []string{
+		fmt.Sprintf("%s, hour %d, %s", s.c.Name, h.Index, h.Time.UTC().Format(time.RFC3339)),
+		"The least of 'cost' is the cost of the hour per hour, in the currency of the case.",
+		"on_C_I: unit I of class C is on; mw_C_I_S: its output above the minimum, step S; response_C_I: MW held;",
+		"synthetic_C_I: MW.s of synthetic inertia; unserved, excess: MW off balance; short_LIMIT: MW of a loss not covered;",
+		"cover_T_LIMIT: MW of loss covered at instant T; loss_T_K_I: loss K (of unit I) at instant T.",
+	}
+	for c := range p.Classes {
+		comments = append(comments, fmt.Sprintf("class %d: %s", c, s.c.Resources[p.Classes[c].Unit].Name))
+	}
+	for k := range p.Losses {
+		comments = append(comments, fmt.Sprintf("loss %d: %s", k, p.Losses[k].Name))
+	}
+	var at []limits.Instant
+	for _, f := range q.sep.order {
+		at = append(at, f.at)
+	}
+	return p.Model(append(at, p.Grid()...)).WriteMPS(w, fmt.Sprintf("hour_%d", h.Index), comments)
+}
+
+// search solves an hour. The damping bound supposes that the load is served and the
+// balance met; an hour in which it is not is solved again without damping in its rows.
+func (s *Solver) search(ctx context.Context, h *fleet.Hour) (*formulate.Problem, *search, error) {
+	p := formulate.Build(s.c, h)
+	p.WithoutLimits = s.opt.WithoutLimits
+	for {
+		q := newSearch(p, s.opt)
+		if err := q.run(ctx); err != nil {
+			return nil, nil, err
+		}
+		st, excess := q.mix()
+		if p.DampingA0 == 0 || p.WithoutLimits || st.unserved <= shortTolMW && excess <= shortTolMW {
+			return p, q, nil
+		}
+		p.DampingA0 = 0
+	}
+}
