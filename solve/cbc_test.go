@@ -33,15 +33,14 @@ func cbcPath(t testing.TB) string {
 // cbcAnswer is what cbc makes of a model.
 type cbcAnswer struct {
 	cost, bound float64
-	took        time.Duration
+	solving     time.Duration // its own count, to 10 ms
 }
 
 // runCBC solves an MPS file to a relative gap.
 func runCBC(t testing.TB, cbc, mps string, gap float64) cbcAnswer {
 	t.Helper()
-	started := time.Now()
 	out, err := exec.Command(cbc, mps, "ratio", fmt.Sprint(gap), "sec", "300", "solve").CombinedOutput()
-	a := cbcAnswer{cost: math.NaN(), bound: math.NaN(), took: time.Since(started)}
+	a := cbcAnswer{cost: math.NaN(), bound: math.NaN()}
 	if err != nil {
 		t.Fatalf("cbc: %v\n%s", err, out)
 	}
@@ -52,6 +51,10 @@ func runCBC(t testing.TB, cbc, mps string, gap float64) cbcAnswer {
 		solved = solved || strings.HasPrefix(line, "Result - Optimal solution found")
 		if v, ok := strings.CutPrefix(line, "Objective value:"); ok {
 			a.cost, _ = strconv.ParseFloat(strings.TrimSpace(v), 64)
+		}
+		if v, ok := strings.CutPrefix(line, "Time (Wallclock seconds):"); ok {
+			seconds, _ := strconv.ParseFloat(strings.TrimSpace(v), 64)
+			a.solving = time.Duration(seconds * float64(time.Second))
 		}
 		if v, ok := strings.CutPrefix(line, "Lower bound:"); ok {
 			a.bound, _ = strconv.ParseFloat(strings.TrimSpace(v), 64)
