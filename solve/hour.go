@@ -122,6 +122,7 @@ func clip(mw float64) float64 {
 func (s *Solver) price(q *search, st *state, out *Hour) {
 	p := q.m.p
 	root := q.root()
+	root.basis = q.first
 	held := 0.0
 	for k := range p.Losses {
 		l := &p.Losses[k]

@@ -1,6 +1,9 @@
 package solve
 
 import (
+	"cmp"
+	"slices"
+
 	"evenkeel/limits"
 	"evenkeel/solve/simplex"
 )
@@ -98,7 +101,12 @@ func (m *master) losses(st *state, units []int, out []lost) []lost {
 		out = append(out, v)
 	}
 	// Dropping the dominated ones swaps, so the order is fixed first: largest first.
-	sortLosses(out)
+	slices.SortFunc(out, func(a, b lost) int {
+		if a.mw != b.mw {
+			return cmp.Compare(b.mw, a.mw)
+		}
+		return a.loss - b.loss
+	})
 	n := 0
 	for i := range out {
 		dominated := false
@@ -111,15 +119,6 @@ func (m *master) losses(st *state, units []int, out []lost) []lost {
 		}
 	}
 	return out[:n]
-}
-
-// sortLosses puts the largest first, equal ones by their index.
-func sortLosses(l []lost) {
-	for i := 1; i < len(l); i++ {
-		for j := i; j > 0 && (l[j].mw > l[j-1].mw || l[j].mw == l[j-1].mw && l[j].loss < l[j-1].loss); j-- {
-			l[j], l[j-1] = l[j-1], l[j]
-		}
-	}
 }
 
 // atLeast tells whether v is at least as bad as w at every instant. A lost response that
