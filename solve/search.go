@@ -171,6 +171,7 @@ func (s *search) load(lp *simplex.LP, n *node) {
 	if n.basis == nil {
 		lp.Reset()
 		lp.AddRow(s.m.balance())
+		lp.Merit()
 	} else {
 		lp.Load(n.basis)
 	}
