@@ -195,10 +195,10 @@ func (r *reader) yamlFault(raw []byte, err error) {
 		line = 1 + strings.Count(before, "\n")
 	}
 	want := "YAML; a fault of form hides all others"
-	if strings.Contains(text, "cannot start any token") {
+	if strings.Contains(text, "cannot start any token") || strings.Contains(text, "tab character") {
 		want = "YAML, indented by blanks, not tabs, with odd texts in quotes; a fault of form hides all others"
 	}
-	r.fault(line, "", printable(text), want)
+	r.fault(line, "", "what is not YAML ("+printable(text)+")", want)
 }
 
 // deep gives the line of the first node below maxDepth, or 0. It follows no alias.

@@ -10,7 +10,7 @@ package fleet
 // out of what is turned down, unless its shape is a recovery shape, which takes its
 // energy from the rotor. A battery follows its schedule; output, response and synthetic
 // inertia share its power, and the energy of the hold bounds its response. Demand puts
-// out nothing and holds response up to its cap. A link runs between its two limits.
+// out nothing and holds response up to its cap and its power. A link runs between its two limits.
 //
 // Synthetic inertia of E MW·s takes headroom of 2·E/f0·(largest RoCoF) MW.
 func (c *Case) Hour(h int, opt HourOptions) *Hour {
@@ -53,6 +53,7 @@ func (c *Case) machine(u *Unit, r *Resource, h int, opt HourOptions) {
 	if opt.StartSpreadH > 0 {
 		u.OnCost += r.StartCost / opt.StartSpreadH
 	}
+	u.price(r, h)
 	u.response(&r.Response, h)
 	available := r.Availability.At(h)
 	if r.Kind == Condenser {
@@ -78,10 +79,8 @@ func (c *Case) converter(u *Unit, r *Resource, h int) {
 		HeadPerMWs: 2 / c.Limits.NominalHz * c.Limits.MaxHzPerS,
 		MinMW:      r.MinMW.At(h), MaxMW: r.MaxMW.At(h),
 	}
+	u.price(r, h)
 	u.response(&r.Response, h)
-	if p := r.PricePerMWh.At(h); p != 0 {
-		u.Steps = []Step{{ToMW: max(u.MaxMW, 0), CostPerMWh: p}}
-	}
 	switch r.Kind {
 	case Wind, Solar:
 		u.Renewable = true
@@ -98,11 +97,24 @@ func (c *Case) converter(u *Unit, r *Resource, h int) {
 		}
 	case Demand:
 		u.HeadMW = u.ResponseCapMW
+		if r.PowerMW > 0 {
+			u.HeadMW = min(u.HeadMW, r.PowerMW)
+		}
 	case Link:
 		u.HeadMW = u.MaxMW
 		if r.PowerMW > 0 {
-			u.HeadMW = max(r.PowerMW, u.MaxMW)
+			u.HeadMW = r.PowerMW
 		}
+	}
+}
+
+// price replaces the steps by the one price that a resource without steps has.
+func (u *Unit) price(r *Resource, h int) {
+	if len(r.Steps) > 0 {
+		return
+	}
+	if p := r.PricePerMWh.At(h); p != 0 {
+		u.Steps = []Step{{ToMW: max(r.MaxMW.At(h), 0), CostPerMWh: p}}
 	}
 }
 

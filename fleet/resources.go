@@ -11,7 +11,7 @@ var (
 	machineKeys = []string{"name", "kind", "count", "rating_mva", "inertia_s", "min_output_mw", "max_output_mw", "on_cost_per_h", "start_cost",
 		"min_up_h", "min_down_h", "ramp_mw_per_h", "cost_steps", "cost_per_mwh", "co2_t_per_mwh", "availability", "must_run", "losses_mw", "response", "lost_as_one"}
 	converterKeys = []string{"name", "kind", "count", "power_mw", "energy_mwh", "schedule_mw", "available_mw", "min_output_mw", "max_output_mw",
-		"cost_per_mwh", "co2_t_per_mwh", "response", "synthetic_inertia", "lost_as_one"}
+		"cost_per_mwh", "co2_t_per_mwh", "response", "synthetic_inertia", "lost_as_one", "inertia_s"}
 	responseKeys  = []string{"shape", "cap_mw", "price_per_mw", "share_of_output"}
 	syntheticKeys = []string{"cap_mws", "price_per_mws"}
 	stepKeys      = []string{"to_mw", "per_mwh"}
@@ -263,10 +263,8 @@ func (r *reader) steps(s *section, res *Resource) {
 }
 
 func (r *reader) converter(s *section, res *Resource, in *input) {
-	for _, k := range []string{"inertia_s", "rating_mva"} {
-		if _, ok := s.entries[k]; ok {
-			s.r.warn(s.lineOf(k), s.key(k), "inertia behind a converter", "none of its own (common practice); synthetic_inertia offers an equivalent")
-		}
+	if s.has("inertia_s") {
+		s.fault("inertia_s", "an inertia constant behind a converter", "nothing: it has no inertia of its own (common practice); synthetic_inertia offers an equivalent")
 	}
 	switch res.Kind {
 	case Battery:
@@ -274,12 +272,7 @@ func (r *reader) converter(s *section, res *Resource, in *input) {
 		res.EnergyMWh = s.number("energy_mwh", positive)
 		in.maxMW = s.valueOr("schedule_mw", anyNumber, 0)
 		res.MinMW, res.MaxMW = in.maxMW.Value, in.maxMW.Value
-		for _, x := range valuesOf(in.maxMW.Value) {
-			if math.Abs(x) > res.PowerMW {
-				s.fault("schedule_mw", num(x), "within power_mw ("+num(res.PowerMW)+") either way")
-				break
-			}
-		}
+		s.within("schedule_mw", in.maxMW.Value, res.PowerMW)
 	case Wind, Solar:
 		res.PowerMW = s.numberOr("power_mw", positive, math.Inf(1))
 		in.maxMW = s.value("available_mw", notBelow0)
@@ -298,6 +291,10 @@ func (r *reader) converter(s *section, res *Resource, in *input) {
 		in.maxMW = s.value("max_output_mw", anyNumber)
 		res.MinMW, res.MaxMW = in.minMW.Value, in.maxMW.Value
 		r.ordered(s, in)
+		if res.PowerMW > 0 {
+			s.within("min_output_mw", res.MinMW, res.PowerMW)
+			s.within("max_output_mw", res.MaxMW, res.PowerMW)
+		}
 		res.CO2TPerMWh = s.numberOr("co2_t_per_mwh", notBelow0, 0)
 	}
 	if res.Kind != Battery && res.Kind != Demand {
@@ -306,6 +303,16 @@ func (r *reader) converter(s *section, res *Resource, in *input) {
 	if p := s.part("synthetic_inertia", syntheticKeys); p != nil {
 		res.SyntheticMWs = p.value("cap_mws", notBelow0).Value
 		res.SyntheticPerMWs = p.numberOr("price_per_mws", notBelow0, 0)
+	}
+}
+
+// within reports a value beyond the converter's power.
+func (s *section) within(key string, v Value, power float64) {
+	for _, x := range valuesOf(v) {
+		if math.Abs(x) > power {
+			s.fault(key, num(x), "within power_mw ("+num(power)+") either way")
+			return
+		}
 	}
 }
 

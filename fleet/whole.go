@@ -49,8 +49,8 @@ func (r *reader) whole(root *yaml.Node) {
 		s.missing("hours", "start and count, as no value of the case is a series")
 	}
 	c.Times = r.times
-	r.unused()
-	if len(r.found.Errors()) == 0 {
+	if len(r.found.Errors()) == 0 { // else a name mistyped would look like a column left over
+		r.unused()
 		r.judge(s, demand)
 	}
 }

@@ -142,7 +142,7 @@ func (p *plan) addLinks(machines int) {
 		}
 		p.converters = append(p.converters, converter{
 			name: name, kind: "link", powerMW: mw, buy: true,
-			maxMW: p.book.add("link.csv", name+"_max_mw", 0, could),
+			maxMW: p.book.add("link.csv", name+"_max_mw", decimalsFor(mw), could),
 			pricePerMWh: p.book.add("link.csv", name+"_per_mwh", 2,
 				importPrices(p.streams.of("price/"+name), p.weather, uniform(r, 50, 58))),
 			lostAsOne: true,
