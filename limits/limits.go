@@ -11,6 +11,11 @@ const (
 	Kinds = 3
 )
 
+// Word names a limit in text; String names it in files.
+func (k Kind) Word() string {
+	return [...]string{"RoCoF", "nadir", "steady"}[k]
+}
+
 func (k Kind) String() string {
 	return [...]string{"rocof", "nadir", "steady"}[k]
 }

@@ -203,10 +203,10 @@ func TestStateOf(t *testing.T) {
 		words string
 	}{
 		{hour(solve.Secure), free, "none"},
-		{hour(solve.Secure, limits.RoCoF), byRoCoF, "rocof"},
+		{hour(solve.Secure, limits.RoCoF), byRoCoF, "RoCoF"},
 		{hour(solve.Secure, limits.Nadir), byNadir, "nadir"},
 		{hour(solve.Secure, limits.Steady), bySteady, "steady"},
-		{hour(solve.Secure, limits.RoCoF, limits.Steady), bySeveral, "rocof+steady"},
+		{hour(solve.Secure, limits.RoCoF, limits.Steady), bySeveral, "RoCoF+steady"},
 		{hour(solve.Secure, limits.RoCoF, limits.Nadir, limits.Steady), bySeveral, "all three"},
 		{hour(solve.Short, limits.Nadir), isShort, "SHORT"},
 	} {

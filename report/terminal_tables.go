@@ -28,12 +28,12 @@ func (p *page) whatBinds() {
 			price = amount(b.price.mean()) + " per " + priceUnit(kind)
 			hod, month = hourWindow(b.byHour), monthWindow(b.byMonth)
 		}
-		p.limitRow(limitWords(p.c.Limits, kind), count(b.binding), share(b.binding, n), hod, month, price)
+		p.limitRow(kind.Word(), count(b.binding), share(b.binding, n), hod, month, price)
 	}
 	for _, s := range []struct {
 		name string
 		is   state
-	}{{"more than one", bySeveral}, {"none", free}, {"(short)", isShort}} {
+	}{{"more than one at once", bySeveral}, {"none", free}, {"(short)", isShort}} {
 		p.limitRow(s.name, count(t.states[s.is]), share(t.states[s.is], n), "", "", "")
 	}
 }
@@ -141,7 +141,7 @@ func bindWords(h *solve.Hour) string {
 	var names []string
 	for k, l := range h.Limits {
 		if l.Binds {
-			names = append(names, limits.Kind(k).String())
+			names = append(names, limits.Kind(k).Word())
 		}
 	}
 	switch len(names) {

@@ -220,7 +220,7 @@ func (s *Solver) replay(q *search, st *state, out *Hour) {
 	for kind := range out.Limits {
 		l := &out.Limits[kind]
 		l.Margin = limit[kind] - worst[kind]
-		name := limits.Kind(kind).String()
+		name := limits.Kind(kind).Word()
 		switch {
 		case l.ShortMW > 0:
 			why = append(why, fmt.Sprintf("%s short by %.1f MW of the loss", name, l.ShortMW))

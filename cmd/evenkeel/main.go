@@ -69,6 +69,18 @@ func root() *cobra.Command {
 			"Exit codes: 0 all hours secure, 3 some hours short, 2 bad input, 1 failure.\n\n" + report.Caution,
 		SilenceErrors: true,
 		SilenceUsage:  true,
+		Args:          cobra.ArbitraryArgs,
+		RunE: func(cmd *cobra.Command, args []string) error {
+			if len(args) == 0 {
+				return cmd.Help()
+			}
+			text := ""
+			for _, near := range cmd.SuggestionsFor(args[0]) {
+				text += " (" + near + "?)"
+			}
+			return bad("unknown command %q%s; see 'evenkeel --help'", args[0], text)
+		},
+		SuggestionsMinimumDistance: 2,
 	}
 	cmd.CompletionOptions.HiddenDefaultCmd = true
 	cmd.SetFlagErrorFunc(func(c *cobra.Command, err error) error {
