@@ -59,8 +59,9 @@ func (s *System) rocof(points []point) (hzPerS, atS float64) {
 // roundingS is how far a window's end may miss the instant it was computed from.
 const roundingS = 1e-9
 
-// steepestWindow gives the largest (y(t+w) − y(t))/w of all t ≥ 0 with t+w ≤ until (or
-// t = 0), and its t. Both ends of the window travel along the points; as long as
+// steepestWindow gives the largest (y(t+w) − y(t))/w of all t > −w with t+w ≤ until (or
+// t ≤ 0), and its t: before the loss frequency was at rest, so that a window that starts
+// there sees all of the deviation at its end. In later ones both ends of the window travel along the points; as long as
 // neither passes one, the rise is a cubic in t, whose own turning point is looked at too.
 func steepestWindow(points []point, w, until float64) (hzPerS, atS float64) {
 	last := len(points) - 1
@@ -72,6 +73,9 @@ func steepestWindow(points []point, w, until float64) (hzPerS, atS float64) {
 	yEnd, gEnd := between(points[j], points[j+1], w)
 	rise := point{t: start, y: yEnd - points[0].y, g: gEnd - points[0].g}
 	best := max(0, rise.y)
+	if y, t := highest(points, w); y > best {
+		best, atS = y, t-w
+	}
 
 	// Windows that start after the last slope steeper than the best average cannot beat it.
 	stop := last
@@ -113,6 +117,22 @@ func steepestWindow(points []point, w, until float64) (hzPerS, atS float64) {
 		}
 	}
 	return best / w, atS
+}
+
+// highest gives the largest deviation before an instant, and when it is reached.
+func highest(points []point, before float64) (y, t float64) {
+	for i := 0; i+1 < len(points) && points[i].t < before; i++ {
+		a, b := points[i], points[i+1]
+		if a.y > y {
+			y, t = a.y, a.t
+		}
+		if a.g > 0 && b.g < 0 && b.t > a.t {
+			if at, v := turn(a, b); v > y && at < before {
+				y, t = v, at
+			}
+		}
+	}
+	return y, t
 }
 
 // balanceTolMW is the imbalance that counts as none when nothing damps it.

@@ -13,9 +13,9 @@ type Event struct {
 // Outcome is what a replay measures. Deviations are below nominal and never negative.
 type Outcome struct {
 	// RoCoFHzPerS is the steepest fall of frequency: over WindowS, of all windows that
-	// lie between the loss and SteadyUntilS; at an instant if WindowS is 0, jumps
-	// taken from both sides. A recovery does not count. RoCoFS is that instant, or the
-	// start of that window.
+	// end between the loss and SteadyUntilS (frequency being at rest before the loss); at
+	// an instant if WindowS is 0, jumps taken from both sides. A recovery does not count.
+	// RoCoFS is that instant, or the start of that window, which may be before the loss.
 	RoCoFHzPerS, RoCoFS float64
 
 	// NadirHz is the largest deviation up to the latest of 60 s, SteadyUntilS and
