@@ -64,7 +64,6 @@ type reader struct {
 	times     []time.Time // the hours of the case; nil until known
 	clock     string      // what set them
 	clockLost bool        // what should set them cannot be used
-	hours     *section    // the section that sets them if nothing else does
 
 	index       map[string]int // resources by name
 	shapeIndex  map[string]int // shapes by name

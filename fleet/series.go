@@ -15,10 +15,8 @@ import (
 // there.
 type given struct {
 	Value
-	key   string // path in the case file
-	line  int    // in the case file
-	table *table // nil: a constant
-	col   string
+	key  string // path in the case file
+	line int    // in the case file
 }
 
 // reference is one series file with the first place that names it.
@@ -83,7 +81,7 @@ func (s *section) valueOr(name string, q rule, def float64) given {
 	}
 	s.r.bound(t, i, g.key, q)
 	if s.r.tick(t) {
-		g.Series, g.table, g.col = t.data[i], t, column
+		g.Series = t.data[i]
 	}
 	return g
 }
@@ -196,15 +194,7 @@ func (r *reader) unused() {
 	}
 }
 
-// where gives file, line and key of hour h of a value.
-func (g given) where(r *reader, h int) (file string, line int, key string) {
-	if g.table == nil {
-		return r.path, g.line, g.key
-	}
-	return g.table.name, g.table.lines[h], printable(g.col)
-}
-
-// most and least give the extremes over all hours; NaN is passed over.
+// most gives the largest value over all hours; NaN is passed over.
 func (v Value) most() float64 {
 	if v.Series == nil {
 		return v.Const
@@ -212,19 +202,6 @@ func (v Value) most() float64 {
 	x := math.Inf(-1)
 	for _, y := range v.Series {
 		if y > x {
-			x = y
-		}
-	}
-	return x
-}
-
-func (v Value) least() float64 {
-	if v.Series == nil {
-		return v.Const
-	}
-	x := math.Inf(1)
-	for _, y := range v.Series {
-		if y < x {
 			x = y
 		}
 	}
