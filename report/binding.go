@@ -2,6 +2,7 @@ package report
 
 import (
 	"image/color"
+	"strings"
 	"time"
 
 	"gonum.org/v1/plot"
@@ -9,35 +10,77 @@ import (
 	"gonum.org/v1/plot/vg/draw"
 
 	"evenkeel/fleet"
+	"evenkeel/limits"
 	"evenkeel/solve"
 )
 
-// stateColors can be told apart with any common colour blindness, and by lightness.
-var stateColors = [states]color.Color{
-	free: rgb(0xE4E4E4), byRoCoF: rgb(0x0072B2), byNadir: rgb(0xE69F00),
-	bySteady: rgb(0x009E73), bySeveral: rgb(0xCC79A7), isShort: rgb(0x000000),
+// cell says which limits bind in an hour: one bit a limits.Kind; cellShort: it is short.
+type cell uint8
+
+const (
+	cellShort cell = 1 << limits.Kinds
+	cells          = cellShort + 1
+)
+
+func cellOf(h *solve.Hour) cell {
+	if h.Status == solve.Short {
+		return cellShort
+	}
+	var is cell
+	for k, l := range h.Limits {
+		if l.Binds {
+			is |= 1 << k
+		}
+	}
+	return is
 }
 
-var stateNames = [states]string{
-	free: "no limit binds", byRoCoF: "RoCoF", byNadir: "nadir",
-	bySteady: "steady state", bySeveral: "several", isShort: "short",
+const (
+	rocofBit  = cell(1 << limits.RoCoF)
+	nadirBit  = cell(1 << limits.Nadir)
+	steadyBit = cell(1 << limits.Steady)
+)
+
+// cellColors can be told apart with any common colour blindness, and by lightness.
+var cellColors = [cells]color.Color{
+	0: rgb(0xE4E4E4), rocofBit: rgb(0x0072B2), nadirBit: rgb(0xE69F00), steadyBit: rgb(0x009E73),
+	rocofBit | nadirBit: rgb(0xCC79A7), nadirBit | steadyBit: rgb(0xF0E442), rocofBit | steadyBit: rgb(0x56B4E9),
+	rocofBit | nadirBit | steadyBit: rgb(0x7A3B12), cellShort: rgb(0x000000),
+}
+
+func (is cell) String() string {
+	switch is {
+	case 0:
+		return "no limit binds"
+	case cellShort:
+		return "short"
+	case cellShort - 1:
+		return "all three"
+	}
+	var names []string
+	for k := range limits.Kind(limits.Kinds) {
+		if is>>k&1 == 1 {
+			names = append(names, k.Word())
+		}
+	}
+	return strings.Join(names, " and ")
 }
 
 // calendar shows each hour as a cell: days to the right, hours of the day upwards.
 type calendar struct {
 	days []day
-	of   []state // one an hour
-	at   []int   // hour of the day of each hour
+	of   []cell // one an hour
+	at   []int  // hour of the day of each hour
 }
 
-// block is a rectangle of cells of one state: days [from, to), hours [low, high).
+// block is a rectangle of cells of one kind: days [from, to), hours [low, high).
 type block struct {
 	from, to  float64
 	low, high int
-	is        state
+	is        cell
 }
 
-// blocks joins cells of one state into rectangles: up each day, then over days whose
+// blocks joins cells of one kind into rectangles: up each day, then over days whose
 // columns hold the same piece. Fewer shapes make a smaller file without seams.
 func (k calendar) blocks() []block {
 	var all []block
@@ -72,26 +115,26 @@ func (k calendar) blocks() []block {
 }
 
 // Plot draws all solved hours in the colour of those that no limit binds, then one
-// path a state on top: pieces of one path show no seam where they meet.
+// path a kind of cell on top: pieces of one path show no seam where they meet.
 func (k calendar) Plot(c draw.Canvas, p *plot.Plot) {
 	tx, ty := p.Transforms(&c)
-	var paths [states]vg.Path
+	var paths [cells]vg.Path
 	for _, b := range k.blocks() {
-		for _, is := range []state{free, b.is} {
+		for _, is := range []cell{0, b.is} {
 			path := &paths[is]
 			path.Move(vg.Point{X: tx(b.from), Y: ty(float64(b.low))})
 			path.Line(vg.Point{X: tx(b.to), Y: ty(float64(b.low))})
 			path.Line(vg.Point{X: tx(b.to), Y: ty(float64(b.high))})
 			path.Line(vg.Point{X: tx(b.from), Y: ty(float64(b.high))})
 			path.Close()
-			if b.is == free {
+			if b.is == 0 {
 				break
 			}
 		}
 	}
 	for is, path := range paths {
 		if path != nil {
-			c.SetColor(stateColors[is])
+			c.SetColor(cellColors[is])
 			c.Fill(path)
 		}
 	}
@@ -109,10 +152,10 @@ func (r ruledOver) Plot(c draw.Canvas, p *plot.Plot) {
 
 // bindingFigure is a calendar of which limit binds.
 func bindingFigure(c *fleet.Case, hours []solve.Hour, o Options) figure {
-	k := calendar{of: make([]state, len(hours)), at: make([]int, len(hours))}
-	var n [states]int
+	k := calendar{of: make([]cell, len(hours)), at: make([]int, len(hours))}
+	var n [cells]int
 	for i := range hours {
-		k.of[i] = stateOf(&hours[i])
+		k.of[i] = cellOf(&hours[i])
 		k.at[i] = hours[i].Time.UTC().Hour()
 		n[k.of[i]]++
 	}
@@ -130,8 +173,10 @@ func bindingFigure(c *fleet.Case, hours []solve.Hour, o Options) figure {
 	p.Add(k, ruledOver(axis.bounds))
 
 	var key []entry
-	for is := free; is < states; is++ {
-		key = append(key, entry{name: stateNames[is] + " " + count(n[is]) + " h", color: stateColors[is]})
+	for is := range cells {
+		if n[is] > 0 {
+			key = append(key, entry{name: is.String() + " " + count(n[is]) + " h", color: cellColors[is]})
+		}
 	}
 	below := span(hours)
 	if o.WithoutLimits {
@@ -142,8 +187,8 @@ func bindingFigure(c *fleet.Case, hours []solve.Hour, o Options) figure {
 	}
 	return figure{width: 10 * vg.Inch, height: 4 * vg.Inch, draw: func(canvas draw.Canvas) {
 		area := heading(blank(canvas), "Which frequency limit binds, hour by hour: "+c.Name, below)
-		drawKeyRow(area, key)
-		p.Draw(draw.Crop(area, 0, -vg.Points(8), 0, -entryHeight-vg.Points(8)))
+		used := drawKeyRow(area, key)
+		p.Draw(draw.Crop(area, 0, -vg.Points(8), 0, -used-vg.Points(8)))
 	}}
 }
 

@@ -116,26 +116,26 @@ func TestFiguresSurviveOddNumbers(t *testing.T) {
 func TestCalendarBlocksCoverTheHours(t *testing.T) {
 	rapid.Check(t, func(t *rapid.T) {
 		first := rapid.IntRange(0, 23).Draw(t, "first")
-		of := rapid.SliceOfN(rapid.IntRange(0, int(states)-1), 1, 200).Draw(t, "states")
+		of := rapid.SliceOfN(rapid.IntRange(0, int(cells)-1), 1, 200).Draw(t, "cells")
 		start := time.Date(2032, 2, 27, first, 0, 0, 0, time.UTC)
 		hours := make([]solve.Hour, len(of))
 		k := calendar{at: make([]int, len(of))}
 		for i := range of {
 			hours[i].Time = start.Add(time.Duration(i) * time.Hour)
-			k.of = append(k.of, state(of[i]))
+			k.of = append(k.of, cell(of[i]))
 			k.at[i] = hours[i].Time.Hour()
 		}
 		k.days = splitDays(hours, measure{of: make([]float64, len(of))})
-		type cell struct{ day, hour int }
-		seen := map[cell]state{}
+		type place struct{ day, hour int }
+		seen := map[place]cell{}
 		origin := xOf(k.days[0].start)
 		for _, b := range k.blocks() {
 			for d := int(b.from - origin); d < int(b.to-origin); d++ {
 				for h := b.low; h < b.high; h++ {
-					if _, twice := seen[cell{d, h}]; twice {
+					if _, twice := seen[place{d, h}]; twice {
 						t.Fatalf("day %d, hour %d is covered twice", d, h)
 					}
-					seen[cell{d, h}] = b.is
+					seen[place{d, h}] = b.is
 				}
 			}
 		}
@@ -143,8 +143,8 @@ func TestCalendarBlocksCoverTheHours(t *testing.T) {
 			t.Fatalf("%d cells for %d hours", len(seen), len(of))
 		}
 		for i := range of {
-			if got := seen[cell{(first + i) / 24, (first + i) % 24}]; got != state(of[i]) {
-				t.Fatalf("hour %d is shown as %v, it is %v", i, got, state(of[i]))
+			if got := seen[place{(first + i) / 24, (first + i) % 24}]; got != cell(of[i]) {
+				t.Fatalf("hour %d is shown as %v, it is %v", i, got, cell(of[i]))
 			}
 		}
 	})

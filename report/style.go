@@ -113,7 +113,7 @@ func drawKey(c draw.Canvas, entries []entry) {
 
 // drawKeyRow lists entries from left to right, wrapping to the next row where they
 // would leave c.
-func drawKeyRow(c draw.Canvas, entries []entry) {
+func drawKeyRow(c draw.Canvas, entries []entry) (height vg.Length) {
 	style := sans(9, ink, draw.XLeft, draw.YCenter)
 	x, y := c.Min.X, c.Max.Y-entryHeight/2
 	for _, e := range entries {
@@ -125,6 +125,7 @@ func drawKeyRow(c draw.Canvas, entries []entry) {
 		c.FillText(style, vg.Point{X: x + vg.Points(18), Y: y}, e.name)
 		x += wide + vg.Points(14)
 	}
+	return c.Max.Y - y + entryHeight/2
 }
 
 func drawEntry(c draw.Canvas, e entry, x, y vg.Length) {
