@@ -1,0 +1,218 @@
+package dynamic
+
+import (
+	"math"
+
+	"evenkeel/limits/replay"
+)
+
+// line lays the promises and the triggered responses out as one straight line up to the
+// next event.
+func (s *Simulator) line(to float64) {
+	a, b := 0.0, 0.0
+	add := func(mw, from float64, at, before func(float64) float64) {
+		a += mw * at(s.t-from)
+		b += mw * before(to-from)
+	}
+	for i := range s.promised {
+		if p := &s.promised[i]; p.mw != 0 && s.next > 0 {
+			add(p.mw, p.from, p.shape.At, p.shape.Before)
+		}
+	}
+	for i := range s.steps {
+		if st := &s.steps[i]; st.active {
+			add(st.sign*st.mw*s.lumps[st.unit].n, st.from, st.shape.At, st.shape.Before)
+		}
+	}
+	s.lineFrom, s.lineMW, s.lineSlope = s.t, a, (b-a)/(to-s.t)
+}
+
+// derive fills dy at instant t.
+func (s *Simulator) derive(t float64, y, dy []float64) {
+	x := y[0]
+	mw := s.lineMW + s.lineSlope*(t-s.lineFrom)
+	for i := range s.lumps {
+		l := &s.lumps[i]
+		seen := x
+		if l.delay > 0 {
+			seen = s.before(l, t-l.delay)
+		}
+		l.p = l.derive(seen, y, dy)
+		mw += l.n * l.p
+	}
+	dy[0] = s.accel * (s.lost - mw - s.damping*x)
+}
+
+// before gives the deviation at an instant passed.
+func (s *Simulator) before(l *lump, t float64) float64 {
+	n := len(s.points)
+	if t <= 0 || n == 0 {
+		return 0
+	}
+	i := min(l.cursor, n-1)
+	at := func(i int) float64 { t, _, _ := s.points[i].TYG(); return t }
+	for i > 0 && at(i) > t {
+		i--
+	}
+	for i+1 < n && at(i+1) <= t {
+		i++
+	}
+	l.cursor = i
+	if i+1 >= n {
+		_, y, _ := s.points[i].TYG()
+		return y
+	}
+	y, _ := replay.Between(s.points[i], s.points[i+1], t)
+	return y
+}
+
+const (
+	firstStepS = 0.01
+	leastStepS = 1e-7
+)
+
+// segment integrates up to the next event, or to the instant at which a level is passed.
+// It tells whether nothing moves any more to the end.
+func (s *Simulator) segment() (still bool) {
+	to := s.after(s.t)
+	s.line(to)
+	s.derive(s.t, s.y, s.k1)
+	s.mark()
+	h := firstStepS
+	for s.t < to {
+		h = min(h, s.maxDelayS, to-s.t)
+		if s.opt.MaxStepS > 0 {
+			h = min(h, s.opt.MaxStepS)
+		}
+		if to-s.t-h < leastStepS { // no crumb before the event
+			h = to - s.t
+		}
+		worst := s.attempt(h)
+		if worst > s.opt.TolHz && h > leastStepS {
+			h *= max(0.2, 0.9*math.Cbrt(s.opt.TolHz/worst))
+			continue
+		}
+		if at, ok := s.passes(h); ok && at < s.t+h-leastStepS {
+			if at-s.t <= leastStepS {
+				s.passed(s.t)
+				return false
+			}
+			s.attempt(at - s.t)
+			s.accept(at - s.t)
+			s.passed(s.t)
+			return false
+		} else if ok {
+			s.accept(h)
+			s.passed(s.t)
+			return false
+		}
+		s.accept(h)
+		if s.watch() {
+			return false
+		}
+		grow := 4.0
+		if worst > 0 {
+			grow = min(grow, 0.9*math.Cbrt(s.opt.TolHz/worst))
+		}
+		h *= max(grow, 0.3)
+		if to == s.horizon || len(s.events) <= 3 {
+			if s.quiet() {
+				s.rest()
+				return true
+			}
+		}
+	}
+	s.t = to
+	return false
+}
+
+// attempt takes one step of length h into s.try and gives its error in Hz.
+func (s *Simulator) attempt(h float64) float64 {
+	y, try := s.y, s.try
+	for j := range y {
+		try[j] = y[j] + h/2*s.k1[j]
+	}
+	s.keep(s.p1)
+	s.derive(s.t+h/2, try, s.k2)
+	s.keep(s.p2)
+	for j := range y {
+		try[j] = y[j] + 0.75*h*s.k2[j]
+	}
+	s.derive(s.t+0.75*h, try, s.k3)
+	s.keep(s.p3)
+	for j := range y {
+		try[j] = y[j] + h*(2.0/9*s.k1[j]+1.0/3*s.k2[j]+4.0/9*s.k3[j])
+	}
+	s.derive(s.t+h, try, s.k4)
+	worst := 0.0
+	for j := range y {
+		e := h * math.Abs(-5.0/72*s.k1[j]+1.0/12*s.k2[j]+1.0/9*s.k3[j]-1.0/8*s.k4[j]) * s.weight[j]
+		if e > worst {
+			worst = e
+		}
+	}
+	return worst
+}
+
+// accept makes the attempt of length h the state.
+func (s *Simulator) accept(h float64) {
+	if s.opt.Record {
+		s.energy(h)
+	}
+	s.y, s.try = s.try, s.y
+	s.k1, s.k4 = s.k4, s.k1
+	s.t += h
+	s.out.Steps++
+	s.mark()
+}
+
+// mark records a corner of the trajectory.
+func (s *Simulator) mark() {
+	s.points = append(s.points, replay.At(s.t, s.y[0], s.k1[0]))
+	if s.opt.Record {
+		s.record()
+	}
+}
+
+// quiet tells whether nothing moves any more.
+func (s *Simulator) quiet() bool {
+	const stillHzPerS = 3e-7
+	if s.next < len(s.losses) {
+		return false
+	}
+	for _, e := range s.events {
+		if e > s.t && e != s.first+s.opt.SteadyByS && e != s.first+s.opt.UntilS && e != s.horizon {
+			return false
+		}
+	}
+	if s.lineSlope != 0 {
+		return false
+	}
+	for j, d := range s.k1 {
+		if math.Abs(d)*s.weight[j] > stillHzPerS {
+			return false
+		}
+	}
+	for i := range s.lumps {
+		if l := &s.lumps[i]; l.delay > 0 {
+			if math.Abs(s.before(l, s.t-l.delay)-s.y[0]) > 1e-6 {
+				return false
+			}
+		}
+	}
+	return true
+}
+
+// rest goes on to the end in a straight line.
+func (s *Simulator) rest() {
+	for _, at := range []float64{s.first + s.opt.SteadyByS, s.first + s.opt.UntilS, s.horizon} {
+		if at > s.t {
+			if s.opt.Record {
+				s.attemptStill(at - s.t)
+			}
+			s.t = at
+			s.k1[0] = 0
+			s.mark()
+		}
+	}
+}

@@ -1,0 +1,154 @@
+package dynamic
+
+import (
+	"math"
+
+	"evenkeel/limits/replay"
+)
+
+// keep notes what each source delivers at the stage just derived.
+func (s *Simulator) keep(stage []float64) {
+	if !s.opt.Record {
+		return
+	}
+	for i := range s.lumps {
+		stage[i] = s.lumps[i].n * s.lumps[i].p
+	}
+}
+
+// lineOf gives what a promise or the triggered responses of a unit deliver at an instant of the
+// present segment; after tells the side of a jump.
+func (s *Simulator) stepMW(unit int, t float64, before bool) float64 {
+	mw := 0.0
+	for i := range s.steps {
+		if st := &s.steps[i]; st.unit == unit && st.active {
+			mw += st.sign * st.mw * s.lumps[unit].n * share(st.shape, t-st.from, before)
+		}
+	}
+	return mw
+}
+
+func share(shape interface {
+	At(float64) float64
+	Before(float64) float64
+}, t float64, before bool) float64 {
+	if before {
+		return shape.Before(t)
+	}
+	return shape.At(t)
+}
+
+func (s *Simulator) promisedMW(i int, t float64, before bool) float64 {
+	if s.next == 0 {
+		return 0
+	}
+	p := &s.promised[i]
+	return p.mw * share(p.shape, t-p.from, before)
+}
+
+// energy adds what was delivered over the step accepted, by the weights of the method, so
+// that the balance closes to rounding.
+func (s *Simulator) energy(h float64) {
+	o := &s.out
+	for i := range s.lumps {
+		o.EnergyMWs[i] += h * (2.0/9*s.p1[i] + 1.0/3*s.p2[i] + 4.0/9*s.p3[i])
+		if s.lumps[i].kind == Step {
+			o.EnergyMWs[i] += h / 2 * (s.stepMW(i, s.t, false) + s.stepMW(i, s.t+h, true))
+		}
+	}
+	for i := range s.promised {
+		o.EnergyMWs[len(s.lumps)+i] += h / 2 * (s.promisedMW(i, s.t, false) + s.promisedMW(i, s.t+h, true))
+	}
+	x1, x2, x3 := s.y[0], s.y[0]+h/2*s.k1[0], s.y[0]+0.75*h*s.k2[0]
+	o.DampedMWs += h * s.damping * (2.0/9*x1 + 1.0/3*x2 + 4.0/9*x3)
+	o.LostMWs += h * s.lost
+	o.KineticMWs += (s.try[0] - s.y[0]) / s.accel
+}
+
+// attemptStill records h seconds in which nothing moves.
+func (s *Simulator) attemptStill(h float64) {
+	o := &s.out
+	for i := range s.lumps {
+		o.EnergyMWs[i] += h * (s.lumps[i].n*s.lumps[i].p + s.stepMW(i, s.t, false))
+	}
+	for i := range s.promised {
+		o.EnergyMWs[len(s.lumps)+i] += h * s.promisedMW(i, s.t, false)
+	}
+	o.DampedMWs += h * s.damping * s.y[0]
+	o.LostMWs += h * s.lost
+}
+
+// record notes what each source delivers now.
+func (s *Simulator) record() {
+	o := &s.out
+	o.Times = append(o.Times, s.t)
+	o.Deviation = append(o.Deviation, s.y[0])
+	for i := range s.lumps {
+		o.MW[i] = append(o.MW[i], s.lumps[i].n*s.lumps[i].p+s.stepMW(i, s.t, false))
+	}
+	for i := range s.promised {
+		o.MW[len(s.lumps)+i] = append(o.MW[len(s.lumps)+i], s.promisedMW(i, s.t, false))
+	}
+}
+
+// measure reads the outcome off the trajectory.
+func (s *Simulator) measure() {
+	o := &s.out
+	o.EndHz = s.y[0]
+	if isInf(s.y[0]) {
+		o.NadirHz, o.RoCoFHzPerS, o.SteadyHz, o.InstantHzPerS = math.Inf(1), math.Inf(1), math.Inf(1), math.Inf(1)
+		if s.y[0] < 0 {
+			o.NadirHz, o.RoCoFHzPerS, o.SteadyHz = 0, 0, 0
+			o.PeakHz, o.RiseHzPerS, o.SteadyOverHz = math.Inf(1), math.Inf(1), math.Inf(1)
+		}
+		return
+	}
+	by, until := s.first+s.opt.SteadyByS, s.first+max(s.opt.UntilS, s.opt.SteadyByS)
+	o.Points = o.Points[:0]
+	steepest, fall, rise := 0.0, 0.0, 0.0
+	for _, p := range s.points {
+		t, y, g := p.TYG()
+		o.Points = append(o.Points, Point{t, y, g})
+		steepest = max(steepest, math.Abs(g))
+		if t <= until {
+			if g > fall {
+				fall, o.RoCoFS = g, t
+			}
+			if -g > rise {
+				rise, o.RiseS = -g, t
+			}
+		}
+	}
+	o.InstantHzPerS = steepest
+	o.RoCoFHzPerS, o.RiseHzPerS = fall, rise
+	if s.opt.WindowS > 0 {
+		o.RoCoFHzPerS, o.RoCoFS = replay.SteepestWindow(s.points, s.opt.WindowS, until)
+	}
+	o.NadirHz, o.NadirS = replay.Deepest(s.points, 0, s.horizon)
+	o.SteadyHz, _ = replay.Deepest(s.points, by, until)
+	o.NadirHz, o.SteadyHz = max(o.NadirHz, 0), max(o.SteadyHz, 0)
+	if !s.rises() {
+		o.RiseHzPerS, o.RiseS = 0, 0
+		return
+	}
+	for i, p := range s.points {
+		t, y, g := p.TYG()
+		s.points[i] = replay.At(t, -y, -g)
+	}
+	if s.opt.WindowS > 0 {
+		o.RiseHzPerS, o.RiseS = replay.SteepestWindow(s.points, s.opt.WindowS, until)
+	}
+	o.PeakHz, o.PeakS = replay.Deepest(s.points, 0, s.horizon)
+	o.SteadyOverHz, _ = replay.Deepest(s.points, by, until)
+	o.PeakHz, o.SteadyOverHz = max(o.PeakHz, 0), max(o.SteadyOverHz, 0)
+}
+
+// rises tells whether frequency ever goes above nominal.
+func (s *Simulator) rises() bool {
+	for _, p := range s.points {
+		if _, y, _ := p.TYG(); y < 0 {
+			return true
+		}
+	}
+	return false
+}
