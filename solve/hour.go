@@ -117,37 +117,18 @@ func clip(mw float64) float64 {
 	return mw
 }
 
-// price reads the prices of an hour off the relaxation with the size of the largest
-// loss held at that of the mix.
+// price reads the prices of an hour off the dispatch of its mix, with the commitment held:
+// the duals say what the cost does as a limit is relaxed a little, or as a little more of a
+// service is there.
 func (s *Solver) price(q *search, st *state, out *Hour) {
 	p := q.m.p
-	root := q.root()
-	root.basis = q.first
-	held := 0.0
-	for k := range p.Losses {
-		l := &p.Losses[k]
-		if !l.Commits(p) {
-			continue
-		}
-		mw := l.FixedMW
-		for _, c := range l.Classes {
-			if n := q.commit[c]; l.Single && n > 0 {
-				mw += st.class[c].mw / float64(n)
-			} else if !l.Single {
-				mw += st.class[c].mw
-			}
-		}
-		held = max(held, mw)
+	served := 1.0 // share of the load, which damps
+	if p.Hour.DemandMW > 0 {
+		served = max(0, 1-st.unserved/p.Hour.DemandMW)
 	}
-	if held > 0 {
-		root.low, root.high = held, held*(1+1e-9)
-		root.caps = q.capRows(root.high)
-	}
-	q.best = math.Inf(1) // no cutoff: the relaxation is wanted whole
-	q.relax(root)
 	out.Prices.ResponsePerMW = make([]float64, len(p.Shapes))
-	for i, r := range q.lp.Rows() {
-		y := q.lp.Duals()[i]
+	for i, r := range q.fix.Rows() {
+		y := q.fix.Duals()[i]
 		tag, ok := r.Tag.(*rowTag)
 		if !ok {
 			out.Prices.EnergyPerMWh = y
@@ -169,7 +150,7 @@ func (s *Solver) price(q *search, st *state, out *Hour) {
 		}
 		l := &out.Limits[tag.row.At.Kind]
 		l.Binds = true
-		l.Price += y * (tag.row.HzPerInertia*left + tag.row.HzDamping)
+		l.Price += y * (tag.row.HzPerInertia*left + tag.row.HzDamping*served)
 	}
 }
 
@@ -225,7 +206,7 @@ func (s *Solver) replay(q *search, st *state, out *Hour) {
 		case l.ShortMW > 0:
 			why = append(why, fmt.Sprintf("%s short by %.1f MW of the loss", name, l.ShortMW))
 		case !(l.Margin >= -replayTolHz):
-			why = append(why, fmt.Sprintf("%s passes its limit by %.4f in the replay", name, -l.Margin))
+			why = append(why, fmt.Sprintf("%s %s in the replay, limit %.3g", name, beyond(limits.Kind(kind), worst[kind]), limit[kind]))
 		}
 	}
 	if out.UnservedMW > 0 {
@@ -237,6 +218,20 @@ func (s *Solver) replay(q *search, st *state, out *Hour) {
 	if len(why) > 0 {
 		out.Status, out.Why = Short, strings.Join(why, "; ")
 	}
+}
+
+// collapseHz is a deviation far beyond any protection (common practice): what a replay shows
+// there is only that nothing holds frequency.
+const collapseHz = 5
+
+func beyond(k limits.Kind, v float64) string {
+	switch {
+	case k == limits.RoCoF:
+		return fmt.Sprintf("%.3f Hz/s", v)
+	case v > collapseHz:
+		return fmt.Sprintf("beyond %d Hz (collapse)", collapseHz)
+	}
+	return fmt.Sprintf("%.3f Hz", v)
 }
 
 // capRows keeps every loss on several resources under a cap that it could pass.

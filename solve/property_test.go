@@ -179,3 +179,66 @@ func TestSameAnswerAgain(t *testing.T) {
 		}
 	})
 }
+
+// The price of a limit is what relaxing it a little saves, and that of a response or of
+// inertia what a little more of it, for nothing, saves: finite differences, wherever the
+// commitment stays the same.
+func TestPricesPredictSmallChanges(t *testing.T) {
+	compared := 0
+	rapid.Check(t, func(t *rapid.T) {
+		c, h := drawHour(t, 12)
+		a := solved(t, c, h, -1)
+		what := rapid.SampledFrom([]string{"rocof", "nadir", "steady", "inertia", "response"}).Draw(t, "what")
+		try := func(step float64) (cost, predicted float64, same bool) {
+			d, g := *c, *h
+			switch what {
+			case "rocof":
+				d.Limits.MaxHzPerS += step * c.Limits.MaxHzPerS
+				predicted = -step * c.Limits.MaxHzPerS * a.Limits[limits.RoCoF].Price
+			case "nadir":
+				d.Limits.NadirHz += step * c.Limits.NadirHz
+				predicted = -step * c.Limits.NadirHz * a.Limits[limits.Nadir].Price
+			case "steady":
+				d.Limits.SteadyHz += step * c.Limits.SteadyHz
+				predicted = -step * c.Limits.SteadyHz * a.Limits[limits.Steady].Price
+			case "inertia":
+				more := step * 0.01 * a.InertiaMWs
+				g.LoadInertiaMWs += more
+				predicted = -more * a.Prices.InertiaPerMWs
+			case "response": // a unit that costs nothing and is no loss
+				more := math.Abs(step) * h.DemandMW * 0.1
+				g.Units = append(append([]fleet.Unit(nil), h.Units...), fleet.Unit{Count: 1, HeadMW: more, ResponseCapMW: more, FromHead: true, Shape: 3})
+				d.Resources = append(append([]fleet.Resource(nil), c.Resources...), fleet.Resource{Name: "more"})
+				predicted = -more * a.Prices.ResponsePerMW[3]
+			}
+			b := solved(t, &d, &g, -1)
+			same = true
+			for i := range a.Dispatch {
+				same = same && a.Dispatch[i].On == b.Dispatch[i].On
+			}
+			return b.Cost - a.Cost, predicted, same
+		}
+		const step = 1e-4
+		up, want, same := try(step)
+		if !same || a.Cost > 1e6 { // shortfall prices drown the rest in rounding
+			return
+		}
+		// Where the dispatch is degenerate the slope differs on either side: the price lies
+		// between the two. Damping of the row moves with the inertia online, which costs second order.
+		down, _, sameDown := try(-step)
+		lo, hi := min(up, -down), max(up, -down)
+		if what == "response" || !sameDown {
+			lo, hi = up, 0
+		}
+		slack := 0.05*math.Abs(want) + 2e-7*math.Abs(a.Cost) + 1e-3
+		if want < lo-slack || want > hi+slack {
+			t.Errorf("%s: predicted %.6f, up %.6f, down %.6f, cost %.3f", what, want, up, down, a.Cost)
+		}
+		if want < -1e-2 {
+			compared++
+		}
+	})
+	if compared < 5 {
+		t.Errorf("only %d prices compared", compared)
+	}
+}

@@ -68,7 +68,7 @@ type LimitResult struct {
 	ShortMW float64 // MW of the loss that the limit does not cover
 }
 
-// Prices of one hour: the duals of its rows with the size of the largest loss held.
+// Prices of one hour: the duals of its rows in the dispatch of its mix, commitment held.
 type Prices struct {
 	EnergyPerMWh  float64
 	InertiaPerMWs float64

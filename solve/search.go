@@ -52,7 +52,6 @@ type search struct {
 	best   float64        // cost of the incumbent
 	commit []int          // its units on, one a class
 	basis  *simplex.Basis // its dispatch
-	first  *simplex.Basis // of the whole hour's relaxation
 	whole  state          // of the relaxation being split
 	pruned float64        // least bound of the nodes given up
 	nodes  int
@@ -237,9 +236,6 @@ func (s *search) expand(n *node) {
 	n.bound = max(n.bound, obj)
 	s.lp.DropSlack(1, 1)
 	n.basis = s.lp.Save()
-	if s.first == nil { // the root comes first
-		s.first = n.basis
-	}
 	units := s.units()
 	s.m.measure(s.lp, &s.whole) // rounding measures its own solutions
 	s.round(n, units)
