@@ -5,6 +5,8 @@ import (
 	"time"
 )
 
+const hour = time.Hour
+
 const timeForm = "a time such as 2026-01-31 13:00 (UTC) or 2026-01-31T13:00:00+01:00"
 
 // parseTime reads RFC 3339 or a time without an offset, which counts as UTC; local

@@ -14,6 +14,7 @@ func (r *reader) judge(s *section, demand given) {
 	if lost == 0 {
 		r.warn(s.line, "losses", "no loss at all", "at least one loss; without any, no limit ever binds")
 	}
+	r.penalties(s)
 	var scarce, rigid repeat
 	for h := range c.Times {
 		hour := c.Hour(h, HourOptions{})
@@ -39,6 +40,35 @@ func (r *reader) judge(s *section, demand given) {
 	}
 	if rigid.count > 0 {
 		r.warn(line, "load.demand_mw", fmt.Sprintf("less than what must run in %s (first: hour %d)", hoursWord(rigid.count), rigid.line), "a load of at least the minimum output that must run")
+	}
+}
+
+// penalties warns of prices of a shortfall that some unit's own cost exceeds: falling short
+// would then be a choice.
+func (r *reader) penalties(s *section) {
+	c := r.c
+	dearest, who := 0.0, ""
+	for i := range c.Resources {
+		res := &c.Resources[i]
+		most := res.PricePerMWh.most()
+		for _, st := range res.Steps {
+			most = max(most, st.CostPerMWh)
+		}
+		if most > dearest {
+			dearest, who = most, res.Name
+		}
+	}
+	if c.UnservedPerMWh <= dearest {
+		r.warn(s.lineOf("prices"), "prices.unserved_per_mwh", num(c.UnservedPerMWh), fmt.Sprintf("more than the dearest MWh (%s of %s); else load is not served by choice", num(dearest), who))
+	}
+	dearest, who = 0, ""
+	for i := range c.Resources {
+		if p := c.Resources[i].Response.PricePerMW; p > dearest {
+			dearest, who = p, c.Resources[i].Name
+		}
+	}
+	if c.ShortPerMW <= dearest {
+		r.warn(s.lineOf("prices"), "prices.shortfall_per_mw", num(c.ShortPerMW), fmt.Sprintf("more than the dearest response (%s of %s); else limits are passed by choice", num(dearest), who))
 	}
 }
 

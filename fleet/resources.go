@@ -149,6 +149,7 @@ func (r *reader) machine(s *section, res *Resource, in *input) {
 		s.missing("rating_mva", "the rating that inertia_s counts on, MVA")
 	}
 	r.commonInertia(s, res)
+	defer r.commonRating(s, res)
 	res.OnCostPerH = s.numberOr("on_cost_per_h", anyNumber, 0)
 	res.StartCost = s.numberOr("start_cost", notBelow0, 0)
 	res.MinUpH = s.numberOr("min_up_h", notBelow0, 0)
@@ -189,6 +190,18 @@ func (r *reader) commonInertia(s *section, res *Resource) {
 	}
 	if res.InertiaS < lo || res.InertiaS > hi {
 		s.warn("inertia_s", num(res.InertiaS), source)
+	}
+}
+
+// commonRating warns of a rating that does not go with the output: a slip of the decimal
+// point there is one of the inertia.
+func (r *reader) commonRating(s *section, res *Resource) {
+	most := res.MaxMW.most()
+	if res.Kind == Condenser || !(res.RatingMVA > 0) || !(most > 0) {
+		return
+	}
+	if ratio := res.RatingMVA / most; ratio < 0.95 || ratio > 2.5 {
+		s.warn("rating_mva", num(res.RatingMVA), fmt.Sprintf("1 to 1.5 times max_output_mw (%s), at most 2.5 (common practice)", num(most)))
 	}
 }
 
@@ -282,6 +295,9 @@ func (r *reader) converter(s *section, res *Resource, in *input) {
 				s.fault("available_mw", num(x), "at most power_mw ("+num(res.PowerMW)+")")
 				break
 			}
+		}
+		if most := res.MaxMW.most(); !math.IsInf(res.PowerMW, 1) && res.PowerMW > 5 && most <= 1 && res.MaxMW.Series != nil {
+			s.warn("available_mw", "at most "+num(most)+" in any hour", "MW (power_mw is "+num(res.PowerMW)+"); a share of it must be multiplied out")
 		}
 	case Demand:
 		res.PowerMW = s.numberOr("power_mw", positive, 0)

@@ -113,7 +113,7 @@ func (r *reader) header(t *table, first []string, line string) bool {
 		r.faultIn(t.name, 1, "", fmt.Sprintf("%d columns", len(first)), fmt.Sprintf("at most %d", maxColumns))
 		return false
 	}
-	if got := strings.TrimSpace(first[0]); got != "time" {
+	if got := strings.TrimSpace(first[0]); !strings.EqualFold(got, "time") {
 		r.faultIn(t.name, 1, "time", quoted(got)+" as the first column", "time, then the columns of numbers")
 		return false
 	}

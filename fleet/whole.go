@@ -61,6 +61,9 @@ func (r *reader) frequency(s *section) {
 	}
 	l := &r.c.Limits
 	l.NominalHz = s.number("nominal_hz", rule{lo: 1, hi: 1000})
+	if f := l.NominalHz; f != 50 && f != 60 && !math.IsNaN(f) {
+		s.warn("nominal_hz", num(f), "50 or 60 (common practice)")
+	}
 	rocof, nadir, steady := s.required("rocof", rocofKeys), s.required("nadir", nadirKeys), s.required("steady", steadyKeys)
 	if rocof != nil {
 		l.MaxHzPerS = rocof.number("max_hz_per_s", positive)

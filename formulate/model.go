@@ -297,8 +297,11 @@ func (p *Problem) Grid() []limits.Instant {
 			if s > 0 && l.WindowS > 0 && s+l.WindowS <= l.SteadyUntilS {
 				out = append(out, limits.Instant{Kind: limits.RoCoF, FromS: s, ToS: s + l.WindowS})
 			}
-			out = append(out, limits.Instant{Kind: limits.Nadir, FromS: s, ToS: t})
-			if t >= l.SteadyByS {
+			// What suffices together, see limits.Scan.Worst.
+			if t <= l.SteadyByS {
+				out = append(out, limits.Instant{Kind: limits.Nadir, FromS: s, ToS: t})
+			}
+			if t == l.SteadyByS {
 				out = append(out, limits.Instant{Kind: limits.Steady, FromS: s, ToS: t})
 			}
 		}

@@ -144,10 +144,26 @@ func (s *Scan) merge(horizonS float64, further ...float64) {
 // Row gives the row that keeps a limit at an instant, with the damping of the scan.
 func (s *Scan) Row(at Instant) Row { return s.limits.Row(at, s.shapes, s.a0) }
 
-// Worst fills out with the worst instant of each limit after the loss of lossMW that
-// leaves inertiaMWs of kinetic energy and responseMW of each shape. Every instant
-// reported is one whose Row has the excess reported. It does not allocate.
+// Worst fills out with the worst instants after the loss of lossMW that leaves inertiaMWs of
+// kinetic energy and responseMW of each shape. Together they suffice: where none has an
+// excess, every limit holds. Every instant reported is one whose Row has the excess
+// reported. It does not allocate.
+//
+// A deviation within the steady band at SteadyByS stays there for as long as response and
+// damping at the edge of the band carry the loss: beyond it the imbalance would drive it
+// back. So the return is looked at at SteadyByS alone, the balance up to SteadyUntilS, and
+// the nadir outside of those times.
 func (s *Scan) Worst(lossMW, inertiaMWs float64, responseMW []float64, out *[Worsts]Worst) {
+	s.worstOf(lossMW, inertiaMWs, responseMW, out, s.by == 0)
+}
+
+// WorstAlone is Worst with each limit on its own: the nadir and the return to the steady
+// band are looked at at all times, for use where the steady band is not kept.
+func (s *Scan) WorstAlone(lossMW, inertiaMWs float64, responseMW []float64, out *[Worsts]Worst) {
+	s.worstOf(lossMW, inertiaMWs, responseMW, out, true)
+}
+
+func (s *Scan) worstOf(lossMW, inertiaMWs float64, responseMW []float64, out *[Worsts]Worst, alone bool) {
 	net := s.net
 	for j := range net {
 		net[j] = lossMW
@@ -175,7 +191,7 @@ func (s *Scan) Worst(lossMW, inertiaMWs float64, responseMW []float64, out *[Wor
 		out[WorstRoCoF] = s.worst(RoCoF, s.steepestFirst(), inertiaMWs)
 	}
 
-	nadir, back := s.sweep()
+	nadir, back := s.sweep(alone)
 	out[WorstNadir] = s.worst(Nadir, nadir, inertiaMWs)
 	out[WorstReturn] = s.worst(Steady, back, inertiaMWs)
 

@@ -68,6 +68,13 @@ func (s state) rate() float64 { return s.damping * s.l.NominalHz / (2 * s.inerti
 
 func (s state) worst(l limits.Limits, a0 float64) [limits.Worsts]limits.Worst {
 	var out [limits.Worsts]limits.Worst
+	limits.NewScan(l, s.shapes, a0, s.damping).WorstAlone(s.loss, s.inertia, s.held, &out)
+	return out
+}
+
+// together gives the worst instants that suffice together.
+func (s state) together(l limits.Limits, a0 float64) [limits.Worsts]limits.Worst {
+	var out [limits.Worsts]limits.Worst
 	limits.NewScan(l, s.shapes, a0, s.damping).Worst(s.loss, s.inertia, s.held, &out)
 	return out
 }
@@ -132,6 +139,42 @@ func TestRowsThatHoldReplaySafely(t *testing.T) {
 			}
 		}
 	})
+}
+
+// The instants of Worst suffice together: where none has an excess the replay keeps every
+// limit, though the nadir and the return are looked at less than each on its own.
+func TestRowsSufficeTogether(t *testing.T) {
+	held, fewer := 0, 0
+	rapid.Check(t, func(t *rapid.T) {
+		s := drawState(t, true, false)
+		a0 := rapid.SampledFrom([]float64{0, 0.3, 0.9, 1}).Draw(t, "share of the rate") * s.rate()
+		// Limits near to what the state needs, so that they hold about half of the time.
+		for k, x := range []*float64{&s.l.MaxHzPerS, &s.l.NadirHz, &s.l.SteadyHz} {
+			if v := values(s.replay())[k]; v > 0 && !math.IsInf(v, 1) {
+				*x = v * rapid.Float64Range(0.95, 4).Draw(t, "of the replay")
+			}
+		}
+		s.l.SteadyHz = math.Min(s.l.SteadyHz, s.l.NadirHz)
+		for _, w := range s.together(s.l, a0) {
+			if w.ExcessMW > 0 {
+				return
+			}
+		}
+		held++
+		for _, w := range s.worst(s.l, a0) {
+			if w.ExcessMW > 0 {
+				fewer++
+				break
+			}
+		}
+		got := values(s.replay())
+		for k, limit := range [limits.Kinds]float64{s.l.MaxHzPerS, s.l.NadirHz, s.l.SteadyHz} {
+			if got[k] > limit*(1+1e-7)+1e-7 {
+				t.Errorf("%s: rows hold at %.9g, the replay reaches %.9g", limits.Kind(k), limit, got[k])
+			}
+		}
+	})
+	t.Logf("%d states held, %d of them not limit by limit", held, fewer)
 }
 
 // The other way round: rows forbid no state that the replay finds safe by the slack of

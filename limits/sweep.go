@@ -3,11 +3,12 @@ package limits
 import "math"
 
 // sweep follows y' = net − a0·y from y(0) = 0, held at or above zero, and gives the
-// largest y up to the horizon and within the steady band's time. y·f0/(2·E) bounds the
+// largest y outside of the steady band's time, and that at its start; alone: the largest up
+// to the horizon, and within the steady band's time. y·f0/(2·E) bounds the
 // deviation. Each span starts at the last instant with y = 0 before the largest y, so
 // that its row is the tightest that ends there. Where y never leaves zero, the span
 // starts at the loss and its integral is below zero.
-func (s *Scan) sweep() (nadir, back span) {
+func (s *Scan) sweep(alone bool) (nadir, back span) {
 	net := s.net
 	a0 := s.a0
 	y, zeroS := 0.0, 0.0
@@ -17,14 +18,15 @@ func (s *Scan) sweep() (nadir, back span) {
 			continue
 		}
 		n0, n1 := net[j], net[j+1]
-		steady := j >= s.by && j < s.until
+		steady := alone && j >= s.by && j < s.until
+		watched := alone || j < s.by || j >= s.until
 		end := y*p.decay + n0*p.c1 + (n1-n0)*p.c2
 		rate0, rate1 := n0-a0*y, n1-a0*end // of y; it changes sign at most once in a piece
 		fell := end < 0
 		if rate0 > 0 && rate1 < 0 {
 			t := turn(rate0, (n1-n0)/p.h, a0, p.h)
 			top := span{ahead(y, n0, (n1-n0)/p.h, a0, t), zeroS, s.atS[j] + t}
-			if top.mws > nadir.mws {
+			if watched && top.mws > nadir.mws {
 				nadir = top
 			}
 			if steady && top.mws > back.mws {
@@ -45,10 +47,10 @@ func (s *Scan) sweep() (nadir, back span) {
 		default:
 			y = end
 		}
-		if y > nadir.mws {
+		if watched && y > nadir.mws {
 			nadir = span{y, zeroS, s.atS[j+1]}
 		}
-		if j+1 >= s.by && j < s.until && y > back.mws {
+		if (j+1 == s.by || alone && j+1 > s.by && j < s.until) && y > back.mws {
 			back = span{y, zeroS, s.atS[j+1]}
 		}
 	}

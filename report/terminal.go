@@ -103,8 +103,11 @@ func (p *page) heading() {
 		p.text(verdict+"every limit holds in the replay of every loss.", "")
 	}
 	if short > 0 {
-		p.text(fmt.Sprintf("%s of %s hours SHORT: a limit cannot be met or load cannot be served.",
-			count(short), count(len(p.hours))), "")
+		what := "a limit cannot be met or load cannot be served."
+		if p.o.WithoutLimits {
+			what = "a limit is passed in the replay or load cannot be served."
+		}
+		p.text(fmt.Sprintf("%s of %s hours SHORT: %s", count(short), count(len(p.hours)), what), "")
 	}
 }
 

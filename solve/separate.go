@@ -131,7 +131,11 @@ func (s *separator) worst(st *state, v *lost, out *[limits.Worsts]limits.Worst) 
 		s.response[r.shape] -= r.mw
 	}
 	left := max(st.inertia-v.inertia, 0)
-	s.scan.Worst(v.mw, left, s.response, out)
+	look := s.scan.Worst
+	if st.short[limits.Steady] > 0 { // nothing rests on a steady band that is not kept
+		look = s.scan.WorstAlone
+	}
+	look(v.mw, left, s.response, out)
 	// A shortfall makes the loss smaller for its limit. The instant that is worst then is
 	// not the one that is worst for the whole loss.
 	for kind, short := range st.short {
@@ -139,7 +143,7 @@ func (s *separator) worst(st *state, v *lost, out *[limits.Worsts]limits.Worst) 
 			continue
 		}
 		var less [limits.Worsts]limits.Worst
-		s.scan.Worst(v.mw-short, left, s.response, &less)
+		look(v.mw-short, left, s.response, &less)
 		for k := range out {
 			if int(out[k].At.Kind) == kind {
 				out[k] = less[k]

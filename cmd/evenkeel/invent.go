@@ -42,7 +42,7 @@ func inventCommand() *cobra.Command {
 				return err
 			}
 			path := filepath.Join(out, "case.yaml")
-			fmt.Fprintf(cmd.OutOrStdout(), "%s: an invented system; solve it with\n  evenkeel mix %s --out run/\n", path, path)
+			fmt.Fprintf(cmd.OutOrStdout(), "%s: an invented system; solve it with\n  evenkeel mix %s --out %s\n", path, path, filepath.Clean(out)+"-run/")
 			return nil
 		},
 	}

@@ -25,8 +25,15 @@ func vetCommand() *cobra.Command {
 				fmt.Fprintf(cmd.OutOrStdout(), "%s: %s, %s\n", args[0], count(errs, "error"), count(warns, "warning"))
 				return exit{code: exitBadInput}
 			}
-			fmt.Fprintf(cmd.OutOrStdout(), "%s: good; %s, %s, %s, %s\n", args[0],
+			verdict := "good"
+			if warns > 0 {
+				verdict = "usable"
+			}
+			fmt.Fprintf(cmd.OutOrStdout(), "%s: %s; %s, %s, %s, %s\n", args[0], verdict,
 				count(c.Hours(), "hour"), count(len(c.Resources), "resource"), count(len(c.Shapes), "response shape"), count(warns, "warning"))
+			for _, line := range c.Totals() {
+				fmt.Fprintln(cmd.OutOrStdout(), "  "+line)
+			}
 			return nil
 		},
 	}
