@@ -15,7 +15,8 @@ func (r *reader) judge(s *section, demand given) {
 		r.warn(s.line, "losses", "no loss at all", "at least one loss; without any, no limit ever binds")
 	}
 	r.penalties(s)
-	var scarce, rigid repeat
+	var who *Resource
+	var scarce, rigid, derated repeat
 	for h := range c.Times {
 		hour := c.Hour(h, HourOptions{})
 		most, least := 0.0, 0.0
@@ -23,6 +24,11 @@ func (r *reader) judge(s *section, demand given) {
 			u := &hour.Units[i]
 			n := float64(max(u.Count, 0))
 			most += n * max(u.MaxMW, 0)
+			if r := &c.Resources[i]; r.MustRun && u.Count == 0 && r.Availability.At(h) > 0 {
+				if derated.add(h) {
+					who = r
+				}
+			}
 			if u.MustRun || !u.Commit {
 				least += n * u.MinMW
 			}
@@ -33,6 +39,9 @@ func (r *reader) judge(s *section, demand given) {
 		if least > hour.DemandMW {
 			rigid.add(h)
 		}
+	}
+	if derated.count > 0 {
+		r.warn(who.Line, "machines["+who.Name+"].must_run", fmt.Sprintf("an availability that leaves it less than its minimum output in %s (first: hour %d)", hoursWord(derated.count), derated.line), "0, or enough for the minimum: it is out of service then, must_run or not")
 	}
 	line := demand.line
 	if scarce.count > 0 {

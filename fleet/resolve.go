@@ -1,5 +1,7 @@
 package fleet
 
+import "math"
+
 // Hour resolves hour h of the case into plain numbers.
 //
 // Machines: what one can put out at most is max_output_mw × availability. A unit with no
@@ -7,8 +9,8 @@ package fleet
 // out of the headroom below that most. A condenser consumes its losses when on.
 //
 // Wind and solar can be turned down from what is available to nothing, and hold response
-// out of what is turned down, unless its shape is a recovery shape, which takes its
-// energy from the rotor. A battery follows its schedule; output, response and synthetic
+// out of what is turned down, unless its shape is a recovery shape: that takes its energy
+// from the rotor, at most as much as is put out and as the converter carries besides. A battery follows its schedule; output, response and synthetic
 // inertia share its power, and the energy of the hold bounds its response. Demand puts
 // out nothing and holds response up to its cap and its power. A link runs between its two limits.
 //
@@ -86,7 +88,15 @@ func (c *Case) converter(u *Unit, r *Resource, h int) {
 		u.Renewable = true
 		u.HeadMW = u.MaxMW
 		if u.Shape >= 0 && c.Shapes[u.Shape].Shape.Recovery() {
+			// Out of the rotor, which turns only where there is output, and no more than the
+			// converter carries.
 			u.FromHead = false
+			if !math.IsInf(r.PowerMW, 1) {
+				u.FromHead, u.HeadMW = true, r.PowerMW
+			}
+			if u.ShareOfOutput == 0 {
+				u.ShareOfOutput = 1
+			}
 		}
 	case Battery:
 		u.HeadMW = r.PowerMW

@@ -65,7 +65,7 @@ func (p *Problem) Model(instants []limits.Instant) *Model {
 		}
 	}
 	inf := math.Inf(1)
-	unserved := m.column("unserved", p.UnservedPerMWh, 0, max(p.Hour.DemandMW, 0), false)
+	unserved := m.column("unserved", p.UnservedPerMWh, 0, p.MostUnservedMW(), false)
 	m.add(unserved, balance, 1)
 	excess := m.column("excess", p.UnservedPerMWh, 0, inf, false)
 	m.add(excess, balance, -1)

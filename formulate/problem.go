@@ -39,6 +39,17 @@ type Class struct {
 	Shape   int // −1: none
 }
 
+// MostUnservedMW is the most that can be short of supply: the load, and what runs and draws
+// power whatever is decided.
+func (p *Problem) MostUnservedMW() float64 {
+	mw := max(p.Hour.DemandMW, 0)
+	for c := range p.Classes {
+		u := &p.Hour.Units[p.Classes[c].Unit]
+		mw += float64(p.Classes[c].Count) * max(-u.MinMW, 0)
+	}
+	return mw
+}
+
 // Loss is one loss: FixedMW plus the output of what it takes with it.
 type Loss struct {
 	Name    string

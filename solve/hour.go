@@ -122,6 +122,7 @@ func clip(mw float64) float64 {
 // service is there.
 func (s *Solver) price(q *search, st *state, out *Hour) {
 	p := q.m.p
+	var tight [limits.Kinds]bool
 	served := 1.0 // share of the load, which damps
 	if p.Hour.DemandMW > 0 {
 		served = max(0, 1-st.unserved/p.Hour.DemandMW)
@@ -149,10 +150,19 @@ func (s *Solver) price(q *search, st *state, out *Hour) {
 			}
 		}
 		l := &out.Limits[tag.row.At.Kind]
-		l.Binds = true
+		tight[tag.row.At.Kind] = true
 		l.Price += y * (tag.row.HzPerInertia*left + tag.row.HzDamping*served)
 	}
+	for k := range out.Limits {
+		out.Limits[k].Binds = tight[k] && out.Limits[k].Price >= leastPrice
+		if !out.Limits[k].Binds {
+			out.Limits[k].Price = 0
+		}
+	}
 }
+
+// leastPrice is the smallest price of a limit that counts: a row can be tight at no cost.
+const leastPrice = 1e-4
 
 // replay puts the mix through every loss in the time domain.
 func (s *Solver) replay(q *search, st *state, out *Hour) {

@@ -57,10 +57,10 @@ func newMaster(p *formulate.Problem) *master {
 	}
 	// Load not served also takes its damping along: the shape after the real ones.
 	m.unserved = len(m.sets)
-	demand := max(p.Hour.DemandMW, 0)
+	most := p.MostUnservedMW()
 	m.sets = append(m.sets, len(m.groups))
 	m.groups = append(m.groups, &simplex.Group{Shape: shapes, HasOff: true, Cols: []simplex.Column{
-		{}, {Cost: demand * p.UnservedPerMWh, P: demand, R: demand}}})
+		{}, {Cost: most * p.UnservedPerMWh, P: most, R: most}}})
 	for k := range m.short {
 		m.short[k] = len(m.sets)
 		m.sets = append(m.sets, len(m.groups))

@@ -39,19 +39,46 @@ func (s *Solver) Model(ctx context.Context, h *fleet.Hour, w io.Writer) error {
 }
 
 // search solves an hour. The damping bound supposes that the load is served and the
-// balance met; an hour in which it is not is solved again without damping in its rows.
+// balance met. Where the cheapest mix does neither, two problems share the hour between
+// them: mixes that meet the balance, with damping in their rows, and all mixes without it.
+// The cheaper answer stands, with the lower of the two bounds.
 func (s *Solver) search(ctx context.Context, h *fleet.Hour) (*formulate.Problem, *search, error) {
 	p := formulate.Build(s.c, h)
 	p.WithoutLimits = s.opt.WithoutLimits
-	for {
-		q := newSearch(p, s.opt)
-		if err := q.run(ctx); err != nil {
-			return nil, nil, err
-		}
-		st, excess := q.mix()
-		if p.DampingA0 == 0 || p.WithoutLimits || st.unserved <= shortTolMW && excess <= shortTolMW {
-			return p, q, nil
-		}
-		p.DampingA0 = 0
+	q, met, err := s.searchOne(ctx, p)
+	if err != nil || met || p.DampingA0 == 0 || p.WithoutLimits {
+		return p, q, err
 	}
+	undamped := *p
+	undamped.DampingA0 = 0
+	q, _, err = s.searchOne(ctx, &undamped)
+	if err != nil {
+		return nil, nil, err
+	}
+	served := *p
+	served.UnservedPerMWh *= offBalance
+	r, met, err := s.searchOne(ctx, &served)
+	if err != nil {
+		return nil, nil, err
+	}
+	bound := min(q.bound(), r.bound())
+	if met && r.best < q.best {
+		r.pruned = min(r.pruned, bound)
+		return &served, r, nil
+	}
+	q.pruned = min(q.pruned, bound)
+	return &undamped, q, nil
+}
+
+// offBalance makes a mix that is off balance too dear to be of use.
+const offBalance = 1000
+
+// searchOne solves one problem and tells whether its mix meets the balance.
+func (s *Solver) searchOne(ctx context.Context, p *formulate.Problem) (*search, bool, error) {
+	q := newSearch(p, s.opt)
+	if err := q.run(ctx); err != nil {
+		return nil, false, err
+	}
+	st, excess := q.mix()
+	return q, st.unserved <= shortTolMW && excess <= shortTolMW, nil
 }
