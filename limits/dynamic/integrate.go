@@ -19,10 +19,18 @@ func (s *Simulator) line(to float64) {
 			add(p.mw, p.from, p.shape.At, p.shape.Before)
 		}
 	}
-	for i := range s.steps {
-		if st := &s.steps[i]; st.active {
-			add(st.sign*st.mw*s.lumps[st.unit].n, st.from, st.shape.At, st.shape.Before)
+	// Both directions of a unit are joined first: sums must not depend on which is which.
+	for i := 0; i < len(s.steps); {
+		unit := s.steps[i].unit
+		n := s.lumps[unit].n
+		ua, ub := 0.0, 0.0
+		for ; i < len(s.steps) && s.steps[i].unit == unit; i++ {
+			if st := &s.steps[i]; st.active {
+				ua += st.sign * st.mw * n * st.shape.At(s.t-st.from)
+				ub += st.sign * st.mw * n * st.shape.Before(to-st.from)
+			}
 		}
+		a, b = a+ua, b+ub
 	}
 	s.lineFrom, s.lineMW, s.lineSlope = s.t, a, (b-a)/(to-s.t)
 }
@@ -132,7 +140,6 @@ func (s *Simulator) attempt(h float64) float64 {
 	for j := range y {
 		try[j] = y[j] + h/2*s.k1[j]
 	}
-	s.keep(s.p1)
 	s.derive(s.t+h/2, try, s.k2)
 	s.keep(s.p2)
 	for j := range y {
@@ -144,14 +151,12 @@ func (s *Simulator) attempt(h float64) float64 {
 		try[j] = y[j] + h*(2.0/9*s.k1[j]+1.0/3*s.k2[j]+4.0/9*s.k3[j])
 	}
 	s.derive(s.t+h, try, s.k4)
-	worst := 0.0
+	// Summed, so that units alike weigh the same joined or apart.
+	sum := 0.0
 	for j := range y {
-		e := h * math.Abs(-5.0/72*s.k1[j]+1.0/12*s.k2[j]+1.0/9*s.k3[j]-1.0/8*s.k4[j]) * s.weight[j]
-		if e > worst {
-			worst = e
-		}
+		sum += math.Abs(-5.0/72*s.k1[j]+1.0/12*s.k2[j]+1.0/9*s.k3[j]-1.0/8*s.k4[j]) * s.weight[j]
 	}
-	return worst
+	return h * sum
 }
 
 // accept makes the attempt of length h the state.
@@ -170,6 +175,7 @@ func (s *Simulator) accept(h float64) {
 func (s *Simulator) mark() {
 	s.points = append(s.points, replay.At(s.t, s.y[0], s.k1[0]))
 	if s.opt.Record {
+		s.keep(s.p1) // the first stage of the next step, however often that is tried
 		s.record()
 	}
 }
@@ -177,7 +183,7 @@ func (s *Simulator) mark() {
 // quiet tells whether nothing moves any more.
 func (s *Simulator) quiet() bool {
 	const stillHzPerS = 3e-7
-	if s.next < len(s.losses) {
+	if s.next < len(s.losses) || s.opt.Record { // what is recorded is followed to the end
 		return false
 	}
 	for _, e := range s.events {
@@ -195,7 +201,7 @@ func (s *Simulator) quiet() bool {
 	}
 	for i := range s.lumps {
 		if l := &s.lumps[i]; l.delay > 0 {
-			if math.Abs(s.before(l, s.t-l.delay)-s.y[0]) > 1e-6 {
+			if math.Abs(s.before(l, s.t-l.delay)-s.y[0]) > 1e-7 {
 				return false
 			}
 		}
@@ -207,9 +213,6 @@ func (s *Simulator) quiet() bool {
 func (s *Simulator) rest() {
 	for _, at := range []float64{s.first + s.opt.SteadyByS, s.first + s.opt.UntilS, s.horizon} {
 		if at > s.t {
-			if s.opt.Record {
-				s.attemptStill(at - s.t)
-			}
 			s.t = at
 			s.k1[0] = 0
 			s.mark()

@@ -16,8 +16,8 @@ func (s *Simulator) keep(stage []float64) {
 	}
 }
 
-// lineOf gives what a promise or the triggered responses of a unit deliver at an instant of the
-// present segment; after tells the side of a jump.
+// stepMW gives what the triggered responses of a unit deliver at an instant of the present
+// segment; before tells the side of a jump.
 func (s *Simulator) stepMW(unit int, t float64, before bool) float64 {
 	mw := 0.0
 	for i := range s.steps {
@@ -63,19 +63,6 @@ func (s *Simulator) energy(h float64) {
 	o.DampedMWs += h * s.damping * (2.0/9*x1 + 1.0/3*x2 + 4.0/9*x3)
 	o.LostMWs += h * s.lost
 	o.KineticMWs += (s.try[0] - s.y[0]) / s.accel
-}
-
-// attemptStill records h seconds in which nothing moves.
-func (s *Simulator) attemptStill(h float64) {
-	o := &s.out
-	for i := range s.lumps {
-		o.EnergyMWs[i] += h * (s.lumps[i].n*s.lumps[i].p + s.stepMW(i, s.t, false))
-	}
-	for i := range s.promised {
-		o.EnergyMWs[len(s.lumps)+i] += h * s.promisedMW(i, s.t, false)
-	}
-	o.DampedMWs += h * s.damping * s.y[0]
-	o.LostMWs += h * s.lost
 }
 
 // record notes what each source delivers now.

@@ -110,11 +110,12 @@ func TestLumpedEqualsUnlumped(t *testing.T) {
 			t.Fatalf("%d lumps of %d kinds", len(joined.Units), len(sys.Units))
 		}
 		var a, b Simulator
-		opt := Options{WindowS: 0.5, SteadyByS: 30, UntilS: 60}
+		// Tight: a system that swings on and on carries every difference along.
+		opt := Options{WindowS: 0.5, SteadyByS: 30, UntilS: 60, TolHz: 1e-7}
 		x, y := a.Run(&apart, []Loss{{MW: loss}}, opt), b.Run(&joined, []Loss{{MW: loss}}, opt)
 		// The error of a step is measured the same, so the steps are, to rounding.
 		if math.Abs(x.NadirHz-y.NadirHz) > 1e-4 || math.Abs(x.EndHz-y.EndHz) > 1e-4 || math.Abs(x.RoCoFHzPerS-y.RoCoFHzPerS) > 1e-4 {
-			t.Errorf("apart %+v, joined %+v", x.NadirHz, y.NadirHz)
+			t.Errorf("apart %v %v %v, joined %v %v %v, %d and %d steps\n%v\n%v", x.NadirHz, x.EndHz, x.RoCoFHzPerS, y.NadirHz, y.EndHz, y.RoCoFHzPerS, x.Steps, y.Steps, x.Happenings, y.Happenings)
 		}
 	})
 }
@@ -163,6 +164,9 @@ func TestHalvedSteps(t *testing.T) {
 		x := a.Run(sys, []Loss{{MW: loss}}, Options{WindowS: 0.5, SteadyByS: 30, UntilS: 60})
 		// The error of a step grows with its third power.
 		y := b.Run(sys, []Loss{{MW: loss}}, Options{WindowS: 0.5, SteadyByS: 30, UntilS: 60, TolHz: DefaultTolHz / 8})
+		if x.NadirHz > 3 { // collapsed
+			return
+		}
 		if math.Abs(x.NadirHz-y.NadirHz) > 1e-3 {
 			t.Fatalf("nadir %.6f Hz, with half the steps %.6f", x.NadirHz, y.NadirHz)
 		}

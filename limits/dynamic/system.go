@@ -76,7 +76,7 @@ type Options struct {
 }
 
 // DefaultTolHz bounds the error of one step.
-const DefaultTolHz = 2e-5
+const DefaultTolHz = 5e-6
 
 // LeastHorizonS is how long a simulation lasts at least.
 const LeastHorizonS = 60

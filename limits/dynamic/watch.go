@@ -77,21 +77,21 @@ func (s *Simulator) armed() (low, high float64) {
 	return low, high
 }
 
-// levelTolHz is how near to a level counts as there: steps end on levels to rounding.
-const levelTolHz = 1e-9
+// near is how near to a level counts as there: the step that ends on it is off by its error.
+func (s *Simulator) near() float64 { return 5*s.opt.TolHz + 1e-6 }
 
 // passed sets off what watches the levels that frequency is at.
 func (s *Simulator) passed(t float64) {
 	x := s.y[0]
 	for i := range s.steps {
 		st := &s.steps[i]
-		if !st.active && t >= st.readyAt && st.sign*x >= st.level-levelTolHz {
+		if !st.active && t >= st.readyAt && st.sign*x >= st.level-s.near() {
 			s.setOff(st)
 		}
 	}
 	for i := range s.relay {
 		r := &s.relay[i]
-		if r.done || r.beyond || r.LevelHz <= 0 || r.side()*x < r.LevelHz-levelTolHz {
+		if r.done || r.beyond || r.LevelHz <= 0 || r.side()*x < r.LevelHz-s.near() {
 			continue
 		}
 		s.pickUp(r)
@@ -125,7 +125,7 @@ func (s *Simulator) watch() (changed bool) {
 			if !r.beyond {
 				continue // picked up where the level is passed
 			}
-			beyond = r.side()*s.y[0] >= r.LevelHz-levelTolHz
+			beyond = r.side()*s.y[0] >= r.LevelHz-s.near()
 		}
 		if r.HzPerS > 0 {
 			rate := s.k1[0]
