@@ -22,7 +22,7 @@ func (s *Simulator) line(to float64) {
 	// Both directions of a unit are joined first: sums must not depend on which is which.
 	for i := 0; i < len(s.steps); {
 		unit := s.steps[i].unit
-		n := s.lumps[unit].n
+		n := s.count(unit)
 		ua, ub := 0.0, 0.0
 		for ; i < len(s.steps) && s.steps[i].unit == unit; i++ {
 			if st := &s.steps[i]; st.active {
@@ -46,7 +46,7 @@ func (s *Simulator) derive(t float64, y, dy []float64) {
 			seen = s.before(l, t-l.delay)
 		}
 		l.p = l.derive(seen, y, dy)
-		mw += l.n * l.p
+		mw += l.p
 	}
 	dy[0] = s.accel * (s.lost - mw - s.damping*x)
 }

@@ -2,20 +2,23 @@ package dynamic
 
 import "math"
 
-// lump is one unit of the system prepared for integration: rates instead of lags.
+// lump is all units of one model prepared for integration: rates instead of lags. Behind what
+// droop asks for, a chain of lags is linear, so units of any size and room share it. Rate
+// limits and synthetic inertia are not: their units share a lump only where they are alike.
 type lump struct {
-	kind     Kind
-	n        float64
-	k        float64 // MW per Hz of deviation beyond the deadband
-	band     float64
-	up, down float64
-	rate     float64 // MW/s; 0: not limited
+	model *Model
+	kind  Kind
+	parts []part
+	band  float64
+	rate  float64 // MW/s of all units; 0: not limited
 
 	r1, r2, r3 float64 // 1/lag of the stages, 0: none
 	hp         float64 // share before r3 (Steam)
 	lead       float64 // direct share of the transient droop (Hydro)
 	delay      float64
-	mwsPerHz   float64 // Synthetic: 2·E/f0
+	mwsPerHz   float64 // Synthetic: 2·E/f0 of all units
+	up, down   float64 // MW of all units
+	reach      float64 // beyond the deadband, from where on all units are at their room
 
 	at     int // first state
 	states int
@@ -23,16 +26,61 @@ type lump struct {
 	p      float64
 }
 
-func (l *lump) prepare(u *Unit, f0 float64, at int) {
+// part is N units alike in a lump.
+type part struct {
+	n, k     float64 // units; MW per Hz of deviation beyond the deadband, of one
+	up, down float64 // MW of one
+	rate     float64 // MW/s of one
+	mwsPerHz float64 // of one
+}
+
+func partOf(u *Unit, f0 float64) part {
 	m := u.Model
 	gain := m.Gain
 	if gain == 0 {
 		gain = 1
 	}
-	*l = lump{kind: m.Kind, n: u.N, band: m.DeadbandHz, up: max(u.UpMW, 0), down: max(u.DownMW, 0), rate: m.RatePctPerS / 100 * u.RatingMW, at: at, hp: 1}
+	p := part{n: u.N, up: max(u.UpMW, 0), down: max(u.DownMW, 0), rate: m.RatePctPerS / 100 * u.RatingMW, mwsPerHz: 2 * u.SyntheticMWs / f0}
 	if m.DroopPct > 0 {
-		l.k = gain * u.RatingMW * 100 / (m.DroopPct * f0)
+		p.k = gain * u.RatingMW * 100 / (m.DroopPct * f0)
 	}
+	return p
+}
+
+// takes tells whether another part may share the lump; exactly: so that its own delivery
+// can be told from the lump's by its room.
+func (l *lump) takes(m *Model, p *part, exactly bool) bool {
+	if l.model != m || m.Kind == Step {
+		return false
+	}
+	q := &l.parts[0]
+	switch {
+	case m.Kind == Synthetic:
+		return p.up == q.up && p.down == q.down && p.mwsPerHz == q.mwsPerHz
+	case m.RatePctPerS > 0:
+		return p.up == q.up && p.down == q.down && p.rate == q.rate && p.k == q.k
+	}
+	return !exactly || p.up*q.k == q.up*p.k && p.down*q.k == q.down*p.k
+}
+
+// total sums up what hangs on the number of units.
+func (l *lump) total() {
+	l.rate, l.mwsPerHz, l.up, l.down, l.reach = 0, 0, 0, 0, 0
+	for i := range l.parts {
+		p := &l.parts[i]
+		l.rate += p.n * p.rate
+		l.mwsPerHz += p.n * p.mwsPerHz
+		l.up += p.n * p.up
+		l.down += p.n * p.down
+		if p.k > 0 {
+			l.reach = max(l.reach, max(p.up, p.down)/p.k)
+		}
+	}
+}
+
+func (l *lump) prepare(m *Model, at int) {
+	parts := l.parts[:0]
+	*l = lump{model: m, kind: m.Kind, parts: parts, band: m.DeadbandHz, at: at, hp: 1}
 	inverse := func(x float64) float64 {
 		if x > 0 {
 			l.states++
@@ -61,19 +109,33 @@ func (l *lump) prepare(u *Unit, f0 float64, at int) {
 		l.delay = m.DelayS
 	case Synthetic:
 		l.r1 = inverse(m.FilterS)
-		l.mwsPerHz = 2 * u.SyntheticMWs / f0
 	}
 }
 
-// asked is what droop asks for at a deviation.
+// asked is what droop asks for at a deviation, of all units.
 func (l *lump) asked(x float64) float64 {
+	sum := 0.0
 	switch {
 	case x > l.band:
-		return min(l.k*(x-l.band), l.up)
+		x -= l.band
+		if x >= l.reach {
+			return l.up
+		}
+		for i := range l.parts {
+			p := &l.parts[i]
+			sum += p.n * min(p.k*x, p.up)
+		}
 	case x < -l.band:
-		return max(l.k*(x+l.band), -l.down)
+		x += l.band
+		if -x >= l.reach {
+			return -l.down
+		}
+		for i := range l.parts {
+			p := &l.parts[i]
+			sum += p.n * max(p.k*x, -p.down)
+		}
 	}
-	return 0
+	return sum
 }
 
 func (l *lump) limited(v float64) float64 {
@@ -83,7 +145,7 @@ func (l *lump) limited(v float64) float64 {
 	return v
 }
 
-// derive gives what one unit delivers at a deviation x (as it measures it) and fills in the
+// derive gives what all units deliver at a deviation x (as it measures it) and fills in the
 // derivatives of its states.
 func (l *lump) derive(x float64, y, dy []float64) float64 {
 	i := l.at
@@ -139,12 +201,12 @@ func (l *lump) derive(x float64, y, dy []float64) float64 {
 	return stage(v, l.r3)
 }
 
-// room weighs a state's error: MW of all units.
+// weight weighs a state's error in MW.
 func (l *lump) weight() float64 {
 	if l.kind == Synthetic {
-		return l.n * l.mwsPerHz * l.r1
+		return l.mwsPerHz * l.r1
 	}
-	return l.n
+	return 1
 }
 
 func isInf(x float64) bool { return math.IsInf(x, 0) }

@@ -11,9 +11,27 @@ func (s *Simulator) keep(stage []float64) {
 	if !s.opt.Record {
 		return
 	}
-	for i := range s.lumps {
-		stage[i] = s.lumps[i].n * s.lumps[i].p
+	for i := range s.home {
+		stage[i] = s.unitMW(i)
 	}
+}
+
+// unitMW is a unit's share of what its lump delivers now, by its room.
+func (s *Simulator) unitMW(i int) float64 {
+	at := s.home[i]
+	l := &s.lumps[at[0]]
+	if len(l.parts) == 1 {
+		return l.p
+	}
+	p := &l.parts[at[1]]
+	room, all := p.up, l.up
+	if l.p < 0 {
+		room, all = p.down, l.down
+	}
+	if all <= 0 {
+		return 0
+	}
+	return l.p * p.n * room / all
 }
 
 // stepMW gives what the triggered responses of a unit deliver at an instant of the present
@@ -22,7 +40,7 @@ func (s *Simulator) stepMW(unit int, t float64, before bool) float64 {
 	mw := 0.0
 	for i := range s.steps {
 		if st := &s.steps[i]; st.unit == unit && st.active {
-			mw += st.sign * st.mw * s.lumps[unit].n * share(st.shape, t-st.from, before)
+			mw += st.sign * st.mw * s.count(unit) * share(st.shape, t-st.from, before)
 		}
 	}
 	return mw
@@ -50,14 +68,14 @@ func (s *Simulator) promisedMW(i int, t float64, before bool) float64 {
 // that the balance closes to rounding.
 func (s *Simulator) energy(h float64) {
 	o := &s.out
-	for i := range s.lumps {
+	for i := range s.home {
 		o.EnergyMWs[i] += h * (2.0/9*s.p1[i] + 1.0/3*s.p2[i] + 4.0/9*s.p3[i])
-		if s.lumps[i].kind == Step {
+		if s.lumps[s.home[i][0]].kind == Step {
 			o.EnergyMWs[i] += h / 2 * (s.stepMW(i, s.t, false) + s.stepMW(i, s.t+h, true))
 		}
 	}
 	for i := range s.promised {
-		o.EnergyMWs[len(s.lumps)+i] += h / 2 * (s.promisedMW(i, s.t, false) + s.promisedMW(i, s.t+h, true))
+		o.EnergyMWs[len(s.home)+i] += h / 2 * (s.promisedMW(i, s.t, false) + s.promisedMW(i, s.t+h, true))
 	}
 	x1, x2, x3 := s.y[0], s.y[0]+h/2*s.k1[0], s.y[0]+0.75*h*s.k2[0]
 	o.DampedMWs += h * s.damping * (2.0/9*x1 + 1.0/3*x2 + 4.0/9*x3)
@@ -70,11 +88,11 @@ func (s *Simulator) record() {
 	o := &s.out
 	o.Times = append(o.Times, s.t)
 	o.Deviation = append(o.Deviation, s.y[0])
-	for i := range s.lumps {
-		o.MW[i] = append(o.MW[i], s.lumps[i].n*s.lumps[i].p+s.stepMW(i, s.t, false))
+	for i := range s.home {
+		o.MW[i] = append(o.MW[i], s.unitMW(i)+s.stepMW(i, s.t, false))
 	}
 	for i := range s.promised {
-		o.MW[len(s.lumps)+i] = append(o.MW[len(s.lumps)+i], s.promisedMW(i, s.t, false))
+		o.MW[len(s.home)+i] = append(o.MW[len(s.home)+i], s.promisedMW(i, s.t, false))
 	}
 }
 

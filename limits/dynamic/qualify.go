@@ -70,7 +70,11 @@ func (s *Simulator) Deliver(u *Unit, nominalHz float64, deviation func(t float64
 		return out
 	}
 	var l lump
-	l.prepare(u, nominalHz, 0)
+	one := *u
+	one.N = 1
+	l.prepare(m, 0)
+	l.parts = append(l.parts, partOf(&one, nominalHz))
+	l.total()
 	y, k1, k2, k3, k4, try := make([]float64, l.states), make([]float64, l.states), make([]float64, l.states), make([]float64, l.states), make([]float64, l.states), make([]float64, l.states)
 	seen := func(t float64) float64 {
 		if t -= l.delay; t >= 0 {

@@ -14,6 +14,7 @@ type Simulator struct {
 	opt   Options
 	out   Outcome
 	lumps []lump
+	home  [][2]int // lump and part of each unit
 	steps []step
 	relay []relay
 
@@ -117,17 +118,40 @@ func (s *Simulator) start(sys *System, losses []Loss, o Options) {
 	s.steps = s.steps[:0]
 	n := 1
 	s.maxDelayS = math.Inf(1)
+	s.home = s.home[:0]
 	for i := range sys.Units {
-		var l lump
-		l.prepare(&sys.Units[i], sys.NominalHz, n)
-		n += l.states
-		s.lumps = append(s.lumps, l)
-		if l.delay > 0 {
-			s.maxDelayS = min(s.maxDelayS, l.delay)
+		u := &sys.Units[i]
+		p := partOf(u, sys.NominalHz)
+		at := -1
+		for j := range s.lumps {
+			if s.lumps[j].takes(u.Model, &p, o.Record) {
+				at = j
+				break
+			}
 		}
+		if at < 0 {
+			at = len(s.lumps)
+			if at < cap(s.lumps) { // keep the old parts' memory
+				s.lumps = s.lumps[:at+1]
+			} else {
+				s.lumps = append(s.lumps, lump{})
+			}
+			l := &s.lumps[at]
+			l.prepare(u.Model, n)
+			n += l.states
+			if l.delay > 0 {
+				s.maxDelayS = min(s.maxDelayS, l.delay)
+			}
+		}
+		l := &s.lumps[at]
+		s.home = append(s.home, [2]int{at, len(l.parts)})
+		l.parts = append(l.parts, p)
 		if l.kind == Step {
 			s.addSteps(i)
 		}
+	}
+	for i := range s.lumps {
+		s.lumps[i].total()
 	}
 	grow := func(v *[]float64) {
 		if cap(*v) < n {
@@ -161,7 +185,7 @@ func (s *Simulator) start(sys *System, losses []Loss, o Options) {
 	keep := s.out
 	s.out = Outcome{Points: keep.Points[:0], Happenings: keep.Happenings[:0], Times: keep.Times[:0], Deviation: keep.Deviation[:0], MW: keep.MW[:0], EnergyMWs: keep.EnergyMWs[:0]}
 	if o.Record {
-		sources := len(s.lumps) + len(s.promised)
+		sources := len(sys.Units) + len(s.promised)
 		s.out.MW, s.out.EnergyMWs = make([][]float64, sources), make([]float64, sources)
 		s.out.Times, s.out.Deviation, s.out.Happenings = nil, nil, nil
 		s.p1, s.p2, s.p3 = make([]float64, sources), make([]float64, sources), make([]float64, sources)
@@ -185,6 +209,12 @@ func (s *Simulator) addSteps(i int) {
 			s.steps = append(s.steps, step{unit: i, name: u.Name, sign: d.sign, level: u.Model.LevelHz, mw: d.mw, shape: shape, ends: ends, rest: u.Model.RestS, readyAt: math.Inf(-1)})
 		}
 	}
+}
+
+// count is how many of a unit are left.
+func (s *Simulator) count(unit int) float64 {
+	at := s.home[unit]
+	return s.lumps[at[0]].parts[at[1]].n
 }
 
 // knots lists the instants at which a shape changes its course.
@@ -264,7 +294,18 @@ func (s *Simulator) lose(l *Loss) {
 	s.lost += l.MW
 	s.inertia -= l.InertiaMWs
 	for _, g := range l.Units {
-		s.lumps[g.Index].n -= g.Much
+		at := s.home[g.Index]
+		lump := &s.lumps[at[0]]
+		p := &lump.parts[at[1]]
+		left := max(p.n-g.Much, 0)
+		if total := lump.up + lump.down; total > 0 { // what the lost ones delivered goes with them
+			keep := 1 - (p.n-left)*(p.up+p.down)/total
+			for j := range lump.states {
+				s.y[lump.at+j] *= keep
+			}
+		}
+		p.n = left
+		lump.total()
 	}
 	for _, g := range l.Promises {
 		s.promised[g.Index].mw -= g.Much
@@ -293,7 +334,7 @@ func (s *Simulator) setOff(st *step) {
 	if end := s.t + st.ends; end < s.horizon {
 		s.events = append(s.events, end)
 	}
-	s.note(st.name, "set off", st.sign*st.mw*s.lumps[st.unit].n)
+	s.note(st.name, "set off", st.sign*st.mw*s.count(st.unit))
 }
 
 func (s *Simulator) note(name, what string, mw float64) {
