@@ -37,7 +37,8 @@ type Case struct {
 
 	Times  []time.Time // start of each hour, UTC
 	Load   Load
-	Shapes []NamedShape // response shapes, in the order of the file
+	Shapes []NamedShape // response shapes in the order of the file, then those of the models
+	Models []NamedModel
 
 	// Resources lists machines, then converters, in the order of the file.
 	Resources []Resource
@@ -61,6 +62,7 @@ type Load struct {
 type NamedShape struct {
 	Name  string
 	Shape limits.Shape
+	Model bool // made from a dynamic model
 }
 
 // Kind says what a resource is.
@@ -133,6 +135,7 @@ type Resource struct {
 	EnergyMWh       float64 // a battery's, usable for the hold
 	SyntheticMWs    Value   // kinetic-energy equivalent on offer
 	SyntheticPerMWs float64 // price for holding 1 MW·s for an hour
+	SyntheticS      float64 // filter of its rate of change; 0: as if it were inertia
 	LostAsOne       bool    // the loss of one unit is a loss the system must survive
 }
 

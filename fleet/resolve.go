@@ -101,7 +101,11 @@ func (c *Case) converter(u *Unit, r *Resource, h int) {
 	case Battery:
 		u.HeadMW = r.PowerMW
 		if u.Shape >= 0 {
-			if s := c.Shapes[u.Shape].Shape.HoldEnergyS(); s > 0 {
+			s := c.Shapes[u.Shape].Shape.HoldEnergyS()
+			if math.IsInf(s, 1) {
+				s = c.Limits.SteadyUntilS
+			}
+			if s > 0 {
 				u.ResponseCapMW = min(u.ResponseCapMW, r.EnergyMWh*3600/s)
 			}
 		}

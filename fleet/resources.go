@@ -12,8 +12,8 @@ var (
 		"min_up_h", "min_down_h", "ramp_mw_per_h", "cost_steps", "cost_per_mwh", "co2_t_per_mwh", "availability", "must_run", "losses_mw", "response", "lost_as_one"}
 	converterKeys = []string{"name", "kind", "count", "power_mw", "energy_mwh", "schedule_mw", "available_mw", "min_output_mw", "max_output_mw",
 		"cost_per_mwh", "co2_t_per_mwh", "response", "synthetic_inertia", "lost_as_one", "inertia_s"}
-	responseKeys  = []string{"shape", "cap_mw", "price_per_mw", "share_of_output"}
-	syntheticKeys = []string{"cap_mws", "price_per_mws"}
+	responseKeys  = []string{"shape", "model", "cap_mw", "price_per_mw", "share_of_output"}
+	syntheticKeys = []string{"cap_mws", "price_per_mws", "filter_s"}
 	stepKeys      = []string{"to_mw", "per_mwh"}
 )
 
@@ -319,6 +319,7 @@ func (r *reader) converter(s *section, res *Resource, in *input) {
 	if p := s.part("synthetic_inertia", syntheticKeys); p != nil {
 		res.SyntheticMWs = p.value("cap_mws", notBelow0).Value
 		res.SyntheticPerMWs = p.numberOr("price_per_mws", notBelow0, 0)
+		res.SyntheticS = p.numberOr("filter_s", rule{lo: 0.01, hi: 10}, 0)
 	}
 }
 
@@ -344,17 +345,32 @@ func (r *reader) response(s *section, res *Resource, in *input) {
 	res.Response.CapMW = in.caps.Value
 	res.Response.PricePerMW = s.numberOr("price_per_mw", notBelow0, 0)
 	res.Response.ShareOfOutput = s.numberOr("share_of_output", share, 0)
-	name, ok := s.text("shape")
+	key := "shape"
+	if s.has("model") {
+		key = "model"
+		if s.has("shape") {
+			s.fault("shape", "a shape beside a model", "either of the two")
+		}
+	}
+	name, ok := s.text(key)
 	if !ok {
 		return
 	}
 	at, known := r.shapeIndex[name]
+	if known && r.c.Shapes[at].Model != (key == "model") {
+		known = false
+	}
 	if !known {
-		want := "the name of a shape"
-		if near := nearestName(name, len(r.c.Shapes), func(i int) string { return r.c.Shapes[i].Name }); near != "" {
+		want := "the name of a " + key
+		if near := nearestName(name, len(r.c.Shapes), func(i int) string {
+			if r.c.Shapes[i].Model != (key == "model") {
+				return ""
+			}
+			return r.c.Shapes[i].Name
+		}); near != "" {
 			want += " (" + near + "?)"
 		}
-		s.fault("shape", "the unknown shape "+quoted(name), want)
+		s.fault(key, "the unknown "+key+" "+quoted(name), want)
 		return
 	}
 	res.Response.Shape = at
@@ -367,6 +383,9 @@ func (r *reader) response(s *section, res *Resource, in *input) {
 	}
 	if res.Kind == Battery {
 		hold := shape.HoldEnergyS()
+		if r.c.Shapes[at].Model && math.IsInf(hold, 1) { // it follows frequency for as long as it must
+			hold = r.c.Limits.SteadyUntilS
+		}
 		switch {
 		case math.IsInf(hold, 1):
 			s.fault("shape", quoted(name)+", held for ever, for a battery", "a shape with hold_s, so that its energy can be counted")

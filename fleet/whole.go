@@ -12,7 +12,7 @@ import (
 )
 
 var (
-	wholeKeys     = []string{"case", "note", "currency", "frequency", "prices", "load", "hours", "shapes", "machines", "converters", "connections", "losses"}
+	wholeKeys     = []string{"case", "note", "currency", "frequency", "prices", "load", "hours", "shapes", "models", "machines", "converters", "connections", "losses"}
 	frequencyKeys = []string{"nominal_hz", "rocof", "nadir", "steady"}
 	rocofKeys     = []string{"max_hz_per_s", "window_s"}
 	nadirKeys     = []string{"max_deviation_hz"}
@@ -43,6 +43,7 @@ func (r *reader) whole(root *yaml.Node) {
 	demand := r.load(s.required("load", loadKeys), s.part("hours", hourKeys))
 	r.shapes(s)
 	r.resources(s)
+	r.qualify()
 	r.connections(s)
 	r.losses(s)
 	if r.times == nil && !r.clockLost {
@@ -284,7 +285,7 @@ func (r *reader) shapes(s *section) {
 		if g == nil {
 			continue
 		}
-		sh := NamedShape{Name: r.claim(g, taken, "shape")}
+		sh := NamedShape{Name: r.claim(g, taken, "shape and model")}
 		made := false
 		if g.has("points") {
 			sh.Shape, made = r.points(g)
@@ -302,6 +303,7 @@ func (r *reader) shapes(s *section) {
 				"some response before frequency.steady.until_s")
 		}
 	}
+	r.models(s, taken)
 }
 
 // delivers tells whether a shape is above zero anywhere before an instant.

@@ -13,6 +13,9 @@ type Test struct {
 	ToHz   float64
 }
 
+// At is the deviation below nominal after t seconds.
+func (q Test) At(t float64) float64 { return q.deviation(t) }
+
 // deviation is the test's deviation below nominal after t seconds.
 func (q Test) deviation(t float64) float64 {
 	if q.HzPerS > 0 {
@@ -116,51 +119,59 @@ func add(out, y, k []float64, h float64) {
 }
 
 // ShapeBelow makes a shape of a course sampled every so many seconds that nowhere lies above
-// it: straight lines between few of its points, lowered where they would cut a corner. What
-// lies beyond the last sample is kept at the least of the last tenth.
+// it: straight lines between few of its points, at most within below it where it is smooth,
+// lowered where a line would lie above. The last knot is kept for ever, at the least of the
+// last tenth of the course.
 func ShapeBelow(share []float64, everyS, within float64) (limits.Shape, error) {
 	n := len(share)
-	last := share[n-1]
-	for _, v := range share[n-max(1, n/10):] {
-		last = min(last, v)
-	}
-	knots := []limits.Knot{{S: 0, Share: clampShare(share[0] - within)}}
-	if share[0] <= within {
-		knots[0].Share = clampShare(min(share[0], 0))
-	}
+	at := []int{0}
 	for i := 0; i < n-1; {
 		// The farthest point that a line reaches without leaving the samples by more than within.
 		j := i + 1
-		for step := 1; i+step < n; step *= 2 {
-			if !fits(share, i, i+step, within) {
-				break
-			}
+		for step := 2; i+step < n && fits(share, i, i+step, within); step *= 2 {
 			j = i + step
 		}
 		lo, hi := j, min(n-1, i+2*(j-i))
 		for lo < hi {
-			mid := (lo + hi + 1) / 2
-			if fits(share, i, mid, within) {
+			if mid := (lo + hi + 1) / 2; fits(share, i, mid, within) {
 				lo = mid
 			} else {
 				hi = mid - 1
 			}
 		}
-		j = lo
-		v := share[j]
-		if v > within {
-			v -= within
-		}
-		knots = append(knots, limits.Knot{S: float64(j) * everyS, Share: clampShare(v)})
-		i = j
+		i = lo
+		at = append(at, i)
 	}
-	if k := &knots[len(knots)-1]; k.Share > last {
-		k.Share = clampShare(last)
+	lower := make([]float64, len(at))
+	for k := 1; k < len(at); k++ {
+		over, slope := 0.0, (share[at[k]]-share[at[k-1]])/float64(at[k]-at[k-1])
+		for x := at[k-1] + 1; x < at[k]; x++ {
+			over = max(over, share[at[k-1]]+slope*float64(x-at[k-1])-share[x])
+		}
+		lower[k-1], lower[k] = max(lower[k-1], over), max(lower[k], over)
+	}
+	last := share[n-1]
+	for _, v := range share[n-max(1, n/10):] {
+		last = min(last, v)
+	}
+	var knots []limits.Knot
+	for k, i := range at {
+		v := share[i]
+		if lower[k] > 1e-9 {
+			v -= lower[k]
+		}
+		if k == len(at)-1 {
+			v = min(v, last)
+		}
+		if k == 0 && v < 0 && share[0] >= 0 {
+			v = 0 // nothing is delivered before the loss
+			knots = append(knots, limits.Knot{S: 0, Share: 0})
+			continue
+		}
+		knots = append(knots, limits.Knot{S: float64(i) * everyS, Share: min(max(v, -1), 1)})
 	}
 	return limits.NewShape(knots)
 }
-
-func clampShare(v float64) float64 { return min(max(v, -1), 1) }
 
 // fits tells whether all samples between i and j lie near to the line from i to j.
 func fits(share []float64, i, j int, within float64) bool {
