@@ -5,9 +5,12 @@ import (
 	"fmt"
 	"math"
 	"strings"
+	"sync"
 
 	"evenkeel/fleet"
+	"evenkeel/formulate"
 	"evenkeel/limits"
+	"evenkeel/limits/dynamic"
 	"evenkeel/limits/replay"
 	"evenkeel/solve/simplex"
 )
@@ -19,6 +22,11 @@ type Solver struct {
 	sys  *replay.System
 	fast []bool // shapes fully out within FastS
 
+	closed    bool             // some resource has a dynamic model
+	models    []*dynamic.Model // one a shape; nil: a promise
+	synthetic []*dynamic.Model // one a resource; nil: like inertia
+	sims      sync.Pool        // of *dynamic.Simulator
+
 	noReplay bool // the mix is wanted for its cost alone
 }
 
@@ -27,16 +35,26 @@ func New(c *fleet.Case, opt Options) *Solver {
 	s := &Solver{c: c, opt: opt}
 	var shapes [][]replay.Knot
 	for _, n := range c.Shapes {
-		var knots []replay.Knot
-		for _, k := range n.Shape.Knots() {
-			knots = append(knots, replay.Knot{S: k.S, Share: k.Share})
-		}
-		shapes = append(shapes, knots)
+		shapes = append(shapes, knotsOf(n.Shape))
 		s.fast = append(s.fast, n.Shape.FullActivationS() <= FastS)
 	}
-	l := c.Limits
-	s.sys = replay.NewSystem(replay.Limits{NominalHz: l.NominalHz, WindowS: l.WindowS, SteadyByS: l.SteadyByS, SteadyUntilS: l.SteadyUntilS}, shapes)
+	s.sys = s.system(shapes)
+	s.prepareClosed()
 	return s
+}
+
+// system prepares the open-loop replay of shapes.
+func (s *Solver) system(shapes [][]replay.Knot) *replay.System {
+	l := s.c.Limits
+	return replay.NewSystem(replay.Limits{NominalHz: l.NominalHz, WindowS: l.WindowS, SteadyByS: l.SteadyByS, SteadyUntilS: l.SteadyUntilS}, shapes)
+}
+
+func knotsOf(sh limits.Shape) []replay.Knot {
+	var knots []replay.Knot
+	for _, k := range sh.Knots() {
+		knots = append(knots, replay.Knot{S: k.S, Share: k.Share})
+	}
+	return knots
 }
 
 const (
@@ -44,22 +62,32 @@ const (
 	replayTolHz = 1e-6 // by which a replayed value may pass its limit by rounding
 )
 
-// Hour finds, prices and replays the mix of one hour. The only error is the context's.
+// Hour finds, prices and replays the mix of one hour, and proves it in closed loop where the
+// case has dynamic models. The only error is the context's.
 func (s *Solver) Hour(ctx context.Context, h *fleet.Hour) (Hour, error) {
-	p, q, err := s.search(ctx, h)
+	p, q, err := s.search(ctx, h, nil)
 	if err != nil {
 		return Hour{}, err
 	}
+	out, st := s.finish(p, q, s.sys)
+	if !s.closed || s.noReplay || p.WithoutLimits {
+		return out, nil
+	}
+	return s.proven(ctx, h, q, st, out)
+}
+
+// finish describes, prices and replays the mix that a search has found.
+func (s *Solver) finish(p *formulate.Problem, q *search, sys *replay.System) (Hour, *state) {
 	st, excess := q.mix()
 	out := s.describe(q, &st, excess)
 	if !p.WithoutLimits {
 		s.price(q, &st, &out)
 	}
 	if !s.noReplay {
-		s.replay(q, &st, &out)
+		s.replay(sys, q, &st, &out)
 	}
 	out.Effort = Effort{Nodes: q.nodes, Pivots: q.lp.Pivots + q.fix.Pivots, Rows: len(q.sep.order)}
-	return out, nil
+	return out, &st
 }
 
 // mix goes back to the incumbent and measures it.
@@ -164,8 +192,35 @@ func (s *Solver) price(q *search, st *state, out *Hour) {
 // leastPrice is the smallest price of a limit that counts: a row can be tight at no cost.
 const leastPrice = 1e-4
 
+// after is what a loss takes and what it leaves: MW lost, kinetic energy and response left.
+func (s *search) after(st *state, l *formulate.Loss) (mw, left float64, response []float64) {
+	mw, left = l.FixedMW, st.inertia
+	response = append([]float64(nil), st.response...)
+	for _, c := range l.Classes {
+		share := s.share(l, c)
+		part := &st.class[c]
+		mw += share * part.mw
+		left -= share * part.inertia
+		if sh := s.m.p.Classes[c].Shape; sh >= 0 {
+			response[sh] -= share * part.response
+		}
+	}
+	return mw, left, response
+}
+
+// share is the share of a class that a loss takes.
+func (s *search) share(l *formulate.Loss, c int) float64 {
+	switch {
+	case !l.Single:
+		return 1
+	case s.commit[c] == 0:
+		return 0
+	}
+	return 1 / float64(s.commit[c])
+}
+
 // replay puts the mix through every loss in the time domain.
-func (s *Solver) replay(q *search, st *state, out *Hour) {
+func (s *Solver) replay(sys *replay.System, q *search, st *state, out *Hour) {
 	p := q.m.p
 	limit := [limits.Kinds]float64{p.Limits.MaxHzPerS, p.Limits.NadirHz, p.Limits.SteadyHz}
 	damping := p.Hour.DampingMWPerHz
@@ -175,27 +230,11 @@ func (s *Solver) replay(q *search, st *state, out *Hour) {
 	var worst [limits.Kinds]float64
 	for k := range p.Losses {
 		l := &p.Losses[k]
-		mw, left := l.FixedMW, st.inertia
-		response := append([]float64(nil), st.response...)
-		for _, c := range l.Classes {
-			share := 1.0
-			if l.Single {
-				if q.commit[c] == 0 {
-					continue
-				}
-				share = 1 / float64(q.commit[c])
-			}
-			part := &st.class[c]
-			mw += share * part.mw
-			left -= share * part.inertia
-			if sh := p.Classes[c].Shape; sh >= 0 {
-				response[sh] -= share * part.response
-			}
-		}
+		mw, left, response := q.after(st, l)
 		if mw <= 0 {
 			continue
 		}
-		o := s.sys.Run(replay.Event{LossMW: mw, InertiaMWs: left, DampingMWPerHz: damping, ResponseMW: response})
+		o := sys.Run(replay.Event{LossMW: mw, InertiaMWs: left, DampingMWPerHz: damping, ResponseMW: response})
 		for kind, v := range [limits.Kinds]float64{o.RoCoFHzPerS, o.NadirHz, o.SteadyHz} {
 			if v > worst[kind] {
 				worst[kind] = v

@@ -14,7 +14,7 @@ import (
 // Model writes the whole problem of one hour as MPS: every instant at which the
 // optimiser found a row, and a coarse grid of further ones, for every possible loss.
 func (s *Solver) Model(ctx context.Context, h *fleet.Hour, w io.Writer) error {
-	p, q, err := s.search(ctx, h)
+	p, q, err := s.search(ctx, h, nil)
 	if err != nil {
 		return err
 	}
@@ -42,8 +42,13 @@ func (s *Solver) Model(ctx context.Context, h *fleet.Hour, w io.Writer) error {
 // balance met. Where the cheapest mix does neither, two problems share the hour between
 // them: mixes that meet the balance, with damping in their rows, and all mixes without it.
 // The cheaper answer stands, with the lower of the two bounds.
-func (s *Solver) search(ctx context.Context, h *fleet.Hour) (*formulate.Problem, *search, error) {
+//
+// shapes, if given, replace those of the case.
+func (s *Solver) search(ctx context.Context, h *fleet.Hour, shapes []limits.Shape) (*formulate.Problem, *search, error) {
 	p := formulate.Build(s.c, h)
+	if shapes != nil {
+		p.Shapes = shapes
+	}
 	p.WithoutLimits = s.opt.WithoutLimits
 	q, met, err := s.searchOne(ctx, p)
 	if err != nil || met || p.DampingA0 == 0 || p.WithoutLimits {

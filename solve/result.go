@@ -52,6 +52,8 @@ type Hour struct {
 	Limits [limits.Kinds]LimitResult
 	Prices Prices
 
+	Closed Closed
+
 	Dispatch []Dispatch // one a resource, same order as Case.Resources
 	Effort   Effort
 }
@@ -66,6 +68,20 @@ type LimitResult struct {
 	Binds   bool    // relaxing the limit lowers the cost
 	Price   float64 // currency per hour for 1 Hz (RoCoF: 1 Hz/s) of relaxation
 	ShortMW float64 // MW of the loss that the limit does not cover
+}
+
+// Closed is what the closed-loop simulation of an hour's worst losses shows, and what it took
+// to hold there. All values are the worst over the losses simulated.
+type Closed struct {
+	Simulated   int // losses; 0: the case has no dynamic models, or the hour was short before
+	RoCoFHzPerS float64
+	NadirHz     float64
+	NadirS      float64
+	SteadyHz    float64
+	Loss        string  // the loss with the deepest nadir
+	MarginHz    float64 // the least of the margins to the nadir and to the steady limit
+	Mended      int     // times that the rows were rebuilt from what was delivered
+	MendedCost  float64 // what the mending added to the cost
 }
 
 // Prices of one hour: the duals of its rows in the dispatch of its mix, commitment held.

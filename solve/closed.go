@@ -1,0 +1,329 @@
+package solve
+
+import (
+	"context"
+	"fmt"
+	"math"
+
+	"evenkeel/fleet"
+	"evenkeel/limits"
+	"evenkeel/limits/dynamic"
+	"evenkeel/limits/replay"
+)
+
+const (
+	mostMends     = 8
+	closedTolHz   = 1e-3 // the simulation's own error, see dynamic
+	closedTolStep = 2e-5
+	// A loss is simulated if its open-loop replay comes this near to a limit, or passes one
+	// without the responses that must be set off: in a slower fall they act later.
+	nearLimit = 0.7
+)
+
+// prepareClosed notes which responses follow a model.
+func (s *Solver) prepareClosed() {
+	s.models = make([]*dynamic.Model, len(s.c.Shapes))
+	for i := range s.c.Models {
+		m := &s.c.Models[i]
+		s.models[m.Shape] = m.Model
+		s.closed = true
+	}
+	s.synthetic = make([]*dynamic.Model, len(s.c.Resources))
+	for i := range s.c.Resources {
+		if f := s.c.Resources[i].SyntheticS; f > 0 {
+			s.synthetic[i] = &dynamic.Model{Kind: dynamic.Synthetic, FilterS: f}
+			s.closed = true
+		}
+	}
+	s.sims.New = func() any { return new(dynamic.Simulator) }
+}
+
+// proven simulates a mix in closed loop. Where it leaves the corridor the rows of the hour are
+// rebuilt from what was delivered and the hour is solved again, until it holds.
+func (s *Solver) proven(ctx context.Context, h *fleet.Hour, q *search, st *state, out Hour) (Hour, error) {
+	sim := s.sims.Get().(*dynamic.Simulator)
+	defer s.sims.Put(sim)
+	sys := s.sys
+	var shapes []limits.Shape
+	first := out.Cost
+	effort := out.Effort
+	for mends := 0; ; mends++ {
+		if out.Status == Short { // nothing to prove
+			out.Closed.Mended = mends
+			return out, nil
+		}
+		failed := s.simulate(sim, sys, q, st, &out)
+		out.Closed.Mended, out.Closed.MendedCost = mends, out.Cost-first
+		if len(failed) == 0 {
+			return out, nil
+		}
+		if mends == mostMends {
+			out.Status = Short
+			out.Why = fmt.Sprintf("leaves the corridor in closed loop: RoCoF %.3f Hz/s, nadir %.3f Hz, steady %.3f Hz", out.Closed.RoCoFHzPerS, out.Closed.NadirHz, out.Closed.SteadyHz)
+			return out, nil
+		}
+		shapes = s.mend(sim, q, st, shapes, failed, mends)
+		p, r, err := s.search(ctx, h, shapes)
+		if err != nil {
+			return Hour{}, err
+		}
+		var knots [][]replay.Knot
+		for _, sh := range shapes {
+			knots = append(knots, knotsOf(sh))
+		}
+		sys = s.system(knots)
+		q = r
+		out, st = s.finish(p, q, sys)
+		out.Effort.Nodes += effort.Nodes
+		out.Effort.Pivots += effort.Pivots
+		out.Effort.Rows += effort.Rows
+		effort = out.Effort
+	}
+}
+
+// failure is a loss after which a mix leaves the corridor in closed loop.
+type failure struct {
+	loss   dynamic.Loss
+	sys    *dynamic.System
+	early  bool // RoCoF or nadir fails
+	steady bool
+	nadirS float64
+}
+
+// online describes a mix to the simulation. unit and promise give the place of each class's
+// response and of each shape's promise, −1 for none.
+func (s *Solver) online(q *search, st *state) (sys *dynamic.System, unit, synth, promise []int) {
+	p := q.m.p
+	sys = &dynamic.System{NominalHz: p.Limits.NominalHz, LoadMW: p.Hour.DemandMW - st.unserved, InertiaMWs: st.inertia}
+	if p.Hour.DemandMW > 0 {
+		sys.DampingPctPerHz = 100 * p.Hour.DampingMWPerHz / p.Hour.DemandMW
+	}
+	unit, synth, promise = make([]int, len(p.Classes)), make([]int, len(p.Classes)), make([]int, len(p.Shapes))
+	for i := range promise {
+		promise[i] = -1
+	}
+	for c := range p.Classes {
+		unit[c], synth[c] = -1, -1
+		cl, part, n := &p.Classes[c], &st.class[c], float64(q.commit[c])
+		res := &s.c.Resources[cl.Unit]
+		if n == 0 {
+			continue
+		}
+		if part.response > 1e-6 {
+			if m := s.models[cl.Shape]; m != nil {
+				unit[c] = len(sys.Units)
+				sys.Units = append(sys.Units, dynamic.Unit{Name: res.Name, Model: m, N: n, RatingMW: res.Base(), UpMW: part.response / n})
+			} else {
+				if promise[cl.Shape] < 0 {
+					promise[cl.Shape] = len(sys.Promises)
+					sys.Promises = append(sys.Promises, dynamic.Promise{Name: s.c.Shapes[cl.Shape].Name, Shape: s.c.Shapes[cl.Shape].Shape})
+				}
+				sys.Promises[promise[cl.Shape]].MW += part.response
+			}
+		}
+		if m := s.synthetic[cl.Unit]; m != nil && part.inertia > 1e-6 {
+			u := &p.Hour.Units[cl.Unit]
+			power := math.Inf(1)
+			if u.HeadPerMWs > 0 {
+				power = u.HeadPerMWs * part.inertia / n
+			}
+			synth[c] = len(sys.Units)
+			sys.Units = append(sys.Units, dynamic.Unit{Name: res.Name + " (synthetic inertia)", Model: m, N: n, RatingMW: res.Base(), UpMW: power, DownMW: power, SyntheticMWs: part.inertia / n})
+			sys.InertiaMWs -= part.inertia
+		}
+	}
+	return sys, unit, synth, promise
+}
+
+// simulate runs the losses that come near to a limit and fills in out.Closed. It gives those
+// that fail.
+func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search, st *state, out *Hour) []failure {
+	p := q.m.p
+	sys, unit, synth, promise := s.online(q, st)
+	l := p.Limits
+	limit := [limits.Kinds]float64{l.MaxHzPerS, l.NadirHz, l.SteadyHz}
+	opt := s.closedOptions()
+	out.Closed = Closed{MarginHz: math.Inf(1)}
+	triggered := false
+	for i, m := range s.models {
+		triggered = triggered || m != nil && m.Kind == dynamic.Step && st.response[i] > 1e-6
+	}
+	damping := p.Hour.DampingMWPerHz
+	if p.Hour.DemandMW > 0 {
+		damping *= 1 - st.unserved/p.Hour.DemandMW
+	}
+	passes := func(o replay.Outcome, share float64) bool {
+		return o.RoCoFHzPerS > share*limit[limits.RoCoF] || o.NadirHz > share*limit[limits.Nadir] || o.SteadyHz > share*limit[limits.Steady]
+	}
+	var failed []failure
+	for k := range p.Losses {
+		loss := &p.Losses[k]
+		mw, left, response := q.after(st, loss)
+		if mw <= 0 {
+			continue
+		}
+		near := loss.Name == out.WorstLoss || passes(open.Run(replay.Event{LossMW: mw, InertiaMWs: left, DampingMWPerHz: damping, ResponseMW: response}), nearLimit)
+		if !near && triggered {
+			for i, m := range s.models {
+				if m != nil && m.Kind == dynamic.Step {
+					response[i] = 0
+				}
+			}
+			near = passes(open.Run(replay.Event{LossMW: mw, InertiaMWs: left, DampingMWPerHz: damping, ResponseMW: response}), 1)
+		}
+		if !near {
+			continue
+		}
+		d := dynamic.Loss{Name: loss.Name, MW: mw, InertiaMWs: sys.InertiaMWs - left}
+		for _, c := range loss.Classes {
+			share := q.share(loss, c)
+			if u := unit[c]; u >= 0 {
+				d.Units = append(d.Units, dynamic.Gone{Index: u, Much: share * float64(q.commit[c])})
+			}
+			if u := synth[c]; u >= 0 {
+				d.Units = append(d.Units, dynamic.Gone{Index: u, Much: share * float64(q.commit[c])})
+			}
+			if sh := p.Classes[c].Shape; sh >= 0 && s.models[sh] == nil && promise[sh] >= 0 {
+				d.Promises = append(d.Promises, dynamic.Gone{Index: promise[sh], Much: share * st.class[c].response})
+			}
+		}
+		// Kinetic energy left, but for what a filter makes, which is a unit of its own.
+		filtered := 0.0
+		for c := range synth {
+			if synth[c] >= 0 {
+				filtered += st.class[c].inertia
+			}
+		}
+		for _, c := range loss.Classes {
+			if synth[c] >= 0 {
+				filtered -= q.share(loss, c) * st.class[c].inertia
+			}
+		}
+		d.InertiaMWs = sys.InertiaMWs - (left - filtered)
+		o := sim.Run(sys, []dynamic.Loss{d}, opt)
+		cl := &out.Closed
+		cl.Simulated++
+		cl.RoCoFHzPerS = max(cl.RoCoFHzPerS, o.RoCoFHzPerS)
+		cl.SteadyHz = max(cl.SteadyHz, o.SteadyHz)
+		if o.NadirHz > cl.NadirHz {
+			cl.NadirHz, cl.NadirS, cl.Loss = o.NadirHz, o.NadirS, loss.Name
+		}
+		cl.MarginHz = min(cl.MarginHz, l.NadirHz-o.NadirHz, l.SteadyHz-o.SteadyHz)
+		f := failure{loss: d, sys: sys, nadirS: o.NadirS,
+			early:  o.RoCoFHzPerS > limit[limits.RoCoF]+closedTolHz || o.NadirHz > limit[limits.Nadir]+closedTolHz,
+			steady: o.SteadyHz > limit[limits.Steady]+closedTolHz}
+		if f.early || f.steady {
+			failed = append(failed, f)
+		}
+	}
+	return failed
+}
+
+func (s *Solver) closedOptions() dynamic.Options {
+	l := s.c.Limits
+	return dynamic.Options{WindowS: l.WindowS, SteadyByS: l.SteadyByS, UntilS: l.SteadyUntilS, TolHz: closedTolStep}
+}
+
+const (
+	mendSampleS = 0.05
+	mendWithin  = 0.01
+)
+
+// mend lowers the shapes of the models to what was delivered in the failed simulations: up
+// to the nadir as it came; after it no less than at the nadir, as droop only gives way where
+// frequency recovers; and within the steady band's time, where that fails, as it came.
+func (s *Solver) mend(sim *dynamic.Simulator, q *search, st *state, shapes []limits.Shape, failed []failure, mends int) []limits.Shape {
+	if shapes == nil {
+		for i := range s.c.Shapes {
+			shapes = append(shapes, s.c.Shapes[i].Shape)
+		}
+	}
+	l := s.c.Limits
+	until := min(max(l.SteadyUntilS, limits.LeastHorizonS), 120)
+	n := int(until/mendSampleS) + 1
+	samples := make([][]float64, len(shapes))
+	for i, m := range s.models {
+		if m == nil {
+			continue
+		}
+		samples[i] = make([]float64, n)
+		for j := range samples[i] {
+			samples[i][j] = shapes[i].At(float64(j) * mendSampleS)
+		}
+	}
+	opt := s.closedOptions()
+	opt.Record = true
+	for _, f := range failed {
+		o := sim.Run(f.sys, []dynamic.Loss{f.loss}, opt)
+		gone := make([]float64, len(f.sys.Units))
+		for _, g := range f.loss.Units {
+			gone[g.Index] += g.Much
+		}
+		for i, m := range s.models {
+			if m == nil {
+				continue
+			}
+			held := 0.0
+			delivered := make([]float64, len(o.Times))
+			for u := range f.sys.Units {
+				if v := &f.sys.Units[u]; v.Model == m {
+					held += (v.N - gone[u]) * v.UpMW
+					for t := range delivered {
+						delivered[t] += o.MW[u][t]
+					}
+				}
+			}
+			if held <= 1e-6 {
+				continue
+			}
+			at, atNadir := 0, math.Inf(1)
+			for j := range samples[i] {
+				t := float64(j) * mendSampleS
+				for at+1 < len(o.Times) && o.Times[at+1] <= t {
+					at++
+				}
+				share := delivered[at] / held
+				if at+1 < len(o.Times) && o.Times[at+1] > o.Times[at] {
+					share += (delivered[at+1] - delivered[at]) / held * (t - o.Times[at]) / (o.Times[at+1] - o.Times[at])
+				}
+				share *= 1 - 0.005*float64(mends+1) // so that every round changes something
+				least := math.Inf(1)
+				if f.early {
+					if t <= f.nadirS {
+						least, atNadir = share, share
+					} else {
+						least = max(share, atNadir)
+						if math.IsInf(atNadir, 1) {
+							least = share
+						}
+					}
+				}
+				if f.steady && t >= l.SteadyByS {
+					least = min(least, share)
+				}
+				samples[i][j] = min(samples[i][j], least)
+			}
+		}
+	}
+	out := append([]limits.Shape(nil), shapes...)
+	for i := range samples {
+		if samples[i] == nil {
+			continue
+		}
+		if sh, err := dynamic.ShapeBelow(samples[i], mendSampleS, mendWithin); err == nil {
+			out[i] = sh
+		} else {
+			out[i] = nothing
+		}
+	}
+	return out
+}
+
+// nothing is the shape of a response that is of no use: it comes long after all is over.
+var nothing = func() limits.Shape {
+	s, err := limits.Timing{DelayS: 1e5, RampS: 1}.Shape()
+	if err != nil {
+		panic(err)
+	}
+	return s
+}()
