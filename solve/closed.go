@@ -1,11 +1,14 @@
 package solve
 
 import (
+	"cmp"
 	"context"
 	"fmt"
 	"math"
+	"slices"
 
 	"evenkeel/fleet"
+	"evenkeel/formulate"
 	"evenkeel/limits"
 	"evenkeel/limits/dynamic"
 	"evenkeel/limits/replay"
@@ -13,11 +16,16 @@ import (
 
 const (
 	mostMends     = 8
+	mostRecorded  = 2    // failed losses that the rows are rebuilt from in one round
 	closedTolHz   = 1e-3 // the simulation's own error, see dynamic
 	closedTolStep = 2e-5
-	// A loss is simulated if its open-loop replay comes this near to a limit, or passes one
-	// without the responses that must be set off: in a slower fall they act later.
-	nearLimit = 0.7
+	closedStill   = 2e-5 // Hz/s: less than a millihertz until the slowest dashpot has settled
+	// The loss that comes nearest to a limit in open loop is simulated, and every other one that
+	// would pass a limit if closed loop were worse than open loop by this much more than it was so
+	// far. In a slower fall triggered responses act later: a loss that needs them is simulated if
+	// it comes near to a limit at all.
+	closedSlack   = 1.1
+	triggeredFrom = 0.75
 )
 
 // prepareClosed notes which responses follow a model.
@@ -88,6 +96,7 @@ type failure struct {
 	early  bool // RoCoF or nadir fails
 	steady bool
 	nadirS float64
+	rocofS float64
 }
 
 // online describes a mix to the simulation. unit and promise give the place of each class's
@@ -152,29 +161,49 @@ func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search
 	if p.Hour.DemandMW > 0 {
 		damping *= 1 - st.unserved/p.Hour.DemandMW
 	}
-	passes := func(o replay.Outcome, share float64) bool {
-		return o.RoCoFHzPerS > share*limit[limits.RoCoF] || o.NadirHz > share*limit[limits.Nadir] || o.SteadyHz > share*limit[limits.Steady]
+	type candidate struct {
+		loss      *formulate.Loss
+		mw, left  float64
+		severity  float64 // of the open-loop replay, by the limit nearest to it
+		triggered bool    // it passes a limit without the responses that must be set off
 	}
-	var failed []failure
+	severity := func(rocof, nadir, steady float64) float64 {
+		return max(rocof/limit[limits.RoCoF], nadir/limit[limits.Nadir], steady/limit[limits.Steady])
+	}
+	var list []candidate
 	for k := range p.Losses {
 		loss := &p.Losses[k]
 		mw, left, response := q.after(st, loss)
 		if mw <= 0 {
 			continue
 		}
-		near := loss.Name == out.WorstLoss || passes(open.Run(replay.Event{LossMW: mw, InertiaMWs: left, DampingMWPerHz: damping, ResponseMW: response}), nearLimit)
-		if !near && triggered {
+		e := replay.Event{LossMW: mw, InertiaMWs: left, DampingMWPerHz: damping, ResponseMW: response}
+		o := open.Run(e)
+		c := candidate{loss: loss, mw: mw, left: left, severity: severity(o.RoCoFHzPerS, o.NadirHz, o.SteadyHz)}
+		if triggered {
 			for i, m := range s.models {
 				if m != nil && m.Kind == dynamic.Step {
 					response[i] = 0
 				}
 			}
-			near = passes(open.Run(replay.Event{LossMW: mw, InertiaMWs: left, DampingMWPerHz: damping, ResponseMW: response}), 1)
+			o = open.Run(e)
+			c.triggered = severity(o.RoCoFHzPerS, o.NadirHz, o.SteadyHz) > 1
 		}
-		if !near {
+		list = append(list, c)
+	}
+	slices.SortStableFunc(list, func(a, b candidate) int { return cmp.Compare(b.severity, a.severity) })
+	ratio := 1.0 // the most that closed loop was worse than open loop
+	var failed []failure
+	for _, c := range list {
+		if len(failed) == mostRecorded {
+			break // they tell the others' story too: what they miss shows in the next round
+		}
+		near := c.severity*ratio*closedSlack > 1 || c.triggered && c.severity > triggeredFrom
+		if !near && out.Closed.Simulated > 0 {
 			continue
 		}
-		d := dynamic.Loss{Name: loss.Name, MW: mw, InertiaMWs: sys.InertiaMWs - left}
+		loss, mw, left := c.loss, c.mw, c.left
+		d := dynamic.Loss{Name: loss.Name, MW: mw}
 		for _, c := range loss.Classes {
 			share := q.share(loss, c)
 			if u := unit[c]; u >= 0 {
@@ -209,7 +238,11 @@ func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search
 			cl.NadirHz, cl.NadirS, cl.Loss = o.NadirHz, o.NadirS, loss.Name
 		}
 		cl.MarginHz = min(cl.MarginHz, l.NadirHz-o.NadirHz, l.SteadyHz-o.SteadyHz)
-		f := failure{loss: d, sys: sys, nadirS: o.NadirS,
+		worst := severity(o.RoCoFHzPerS, o.NadirHz, o.SteadyHz)
+		if c.severity > 0 {
+			ratio = max(ratio, worst/c.severity)
+		}
+		f := failure{loss: d, sys: sys, nadirS: o.NadirS, rocofS: o.RoCoFS,
 			early:  o.RoCoFHzPerS > limit[limits.RoCoF]+closedTolHz || o.NadirHz > limit[limits.Nadir]+closedTolHz,
 			steady: o.SteadyHz > limit[limits.Steady]+closedTolHz}
 		if f.early || f.steady {
@@ -221,11 +254,11 @@ func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search
 
 func (s *Solver) closedOptions() dynamic.Options {
 	l := s.c.Limits
-	return dynamic.Options{WindowS: l.WindowS, SteadyByS: l.SteadyByS, UntilS: l.SteadyUntilS, TolHz: closedTolStep}
+	return dynamic.Options{WindowS: l.WindowS, SteadyByS: l.SteadyByS, UntilS: l.SteadyUntilS, TolHz: closedTolStep, StillHzPerS: closedStill, SteadyHz: l.SteadyHz}
 }
 
 const (
-	mendSampleS = 0.05
+	mendSampleS = 0.1
 	mendWithin  = 0.01
 )
 
@@ -239,11 +272,18 @@ func (s *Solver) mend(sim *dynamic.Simulator, q *search, st *state, shapes []lim
 		}
 	}
 	l := s.c.Limits
-	until := min(max(l.SteadyUntilS, limits.LeastHorizonS), 120)
+	until := 0.0 // what comes later stays as it is
+	for _, f := range failed {
+		until = max(until, f.nadirS+5, f.rocofS+l.WindowS+5)
+		if f.steady {
+			until = max(until, min(l.SteadyUntilS, l.SteadyByS+15))
+		}
+	}
 	n := int(until/mendSampleS) + 1
 	samples := make([][]float64, len(shapes))
+	changed := make([]bool, len(shapes))
 	for i, m := range s.models {
-		if m == nil {
+		if m == nil || st.response[i] <= 1e-6 {
 			continue
 		}
 		samples[i] = make([]float64, n)
@@ -252,15 +292,19 @@ func (s *Solver) mend(sim *dynamic.Simulator, q *search, st *state, shapes []lim
 		}
 	}
 	opt := s.closedOptions()
-	opt.Record = true
+	opt.Record, opt.UntilS = true, until
 	for _, f := range failed {
+		opt.EndS = until
+		if !f.steady { // what comes after the nadir is not looked at
+			opt.EndS = max(f.nadirS, f.rocofS+l.WindowS) + mendSampleS
+		}
 		o := sim.Run(f.sys, []dynamic.Loss{f.loss}, opt)
 		gone := make([]float64, len(f.sys.Units))
 		for _, g := range f.loss.Units {
 			gone[g.Index] += g.Much
 		}
 		for i, m := range s.models {
-			if m == nil {
+			if samples[i] == nil {
 				continue
 			}
 			held := 0.0
@@ -296,27 +340,51 @@ func (s *Solver) mend(sim *dynamic.Simulator, q *search, st *state, shapes []lim
 						if math.IsInf(atNadir, 1) {
 							least = share
 						}
+						if opt.EndS > 0 && t > opt.EndS {
+							least = atNadir
+						}
 					}
 				}
 				if f.steady && t >= l.SteadyByS {
 					least = min(least, share)
 				}
-				samples[i][j] = min(samples[i][j], least)
+				if least < samples[i][j] {
+					samples[i][j], changed[i] = least, true
+				}
 			}
 		}
 	}
 	out := append([]limits.Shape(nil), shapes...)
 	for i := range samples {
-		if samples[i] == nil {
-			continue
-		}
-		if sh, err := dynamic.ShapeBelow(samples[i], mendSampleS, mendWithin); err == nil {
-			out[i] = sh
-		} else {
-			out[i] = nothing
+		if changed[i] {
+			out[i] = lowered(shapes[i], samples[i])
 		}
 	}
 	return out
+}
+
+// lowered is a shape made of samples, and after them of what is left of the old one.
+func lowered(old limits.Shape, samples []float64) limits.Shape {
+	end := float64(len(samples)-1) * mendSampleS
+	part := 1.0
+	if v := old.At(end); v > 0 {
+		part = min(1, max(0, samples[len(samples)-1]/v))
+	}
+	low, err := dynamic.ShapeBelow(samples, mendSampleS, mendWithin)
+	if err != nil {
+		return nothing
+	}
+	knots := low.Knots()
+	for _, k := range old.Knots() {
+		if k.S > end+mendSampleS {
+			knots = append(knots, limits.Knot{S: k.S, Share: k.Share * part})
+		}
+	}
+	sh, err := limits.NewShape(knots)
+	if err != nil {
+		return nothing
+	}
+	return sh
 }
 
 // nothing is the shape of a response that is of no use: it comes long after all is over.

@@ -182,7 +182,6 @@ func (s *Simulator) mark() {
 
 // quiet tells whether nothing moves any more.
 func (s *Simulator) quiet() bool {
-	const stillHzPerS = 3e-7
 	if s.next < len(s.losses) || s.opt.Record { // what is recorded is followed to the end
 		return false
 	}
@@ -194,14 +193,17 @@ func (s *Simulator) quiet() bool {
 	if s.lineSlope != 0 {
 		return false
 	}
+	if limit := s.opt.SteadyHz; limit > 0 && s.t >= s.first+s.opt.SteadyByS && math.Abs(s.y[0])+60*math.Abs(s.k1[0]) < limit {
+		return true
+	}
 	for j, d := range s.k1 {
-		if math.Abs(d)*s.weight[j] > stillHzPerS {
+		if math.Abs(d)*s.weight[j] > s.opt.StillHzPerS {
 			return false
 		}
 	}
 	for i := range s.lumps {
 		if l := &s.lumps[i]; l.delay > 0 {
-			if math.Abs(s.before(l, s.t-l.delay)-s.y[0]) > 1e-7 {
+			if math.Abs(s.before(l, s.t-l.delay)-s.y[0]) > 10*l.delay*s.opt.StillHzPerS {
 				return false
 			}
 		}

@@ -108,7 +108,7 @@ func (s *Simulator) measure() {
 		}
 		return
 	}
-	by, until := s.first+s.opt.SteadyByS, s.first+max(s.opt.UntilS, s.opt.SteadyByS)
+	by, until := min(s.first+s.opt.SteadyByS, s.horizon), min(s.first+max(s.opt.UntilS, s.opt.SteadyByS), s.horizon)
 	o.Points = o.Points[:0]
 	steepest, fall, rise := 0.0, 0.0, 0.0
 	for _, p := range s.points {

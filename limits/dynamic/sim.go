@@ -94,6 +94,9 @@ func (s *Simulator) start(sys *System, losses []Loss, o Options) {
 	if o.TolHz == 0 {
 		o.TolHz = DefaultTolHz
 	}
+	if o.StillHzPerS == 0 {
+		o.StillHzPerS = DefaultStillHzPerS
+	}
 	s.sys, s.opt = sys, o
 	s.losses = append(s.losses[:0], losses...)
 	slices.SortStableFunc(s.losses, func(a, b Loss) int {
@@ -114,6 +117,9 @@ func (s *Simulator) start(sys *System, losses []Loss, o Options) {
 		last = s.losses[n-1].AtS
 	}
 	s.horizon = max(s.first+max(o.UntilS, LeastHorizonS), last+LeastHorizonS)
+	if o.EndS > 0 {
+		s.horizon = min(s.horizon, o.EndS)
+	}
 	s.lumps = s.lumps[:0]
 	s.steps = s.steps[:0]
 	n := 1
@@ -174,7 +180,12 @@ func (s *Simulator) start(sys *System, losses []Loss, o Options) {
 	for _, p := range sys.Promises {
 		s.promised = append(s.promised, promised{p.Shape, p.MW, s.first})
 	}
-	s.events = append(s.events[:0], s.first+o.SteadyByS, s.first+o.UntilS, s.horizon)
+	s.events = append(s.events[:0], s.horizon)
+	for _, at := range []float64{s.first + o.SteadyByS, s.first + o.UntilS} {
+		if at < s.horizon {
+			s.events = append(s.events, at)
+		}
+	}
 	for _, p := range sys.Promises {
 		if p.MW != 0 {
 			s.knots(p.Shape, s.first)

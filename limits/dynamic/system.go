@@ -70,10 +70,20 @@ type Options struct {
 	WindowS   float64 // over which RoCoF is measured; 0: instantaneous
 	SteadyByS float64 // steady deviation counts from here, seconds after the first loss,
 	UntilS    float64 // to here; the simulation ends at the later of this and 60 s
+	EndS      float64 // ends the run sooner, for a look at the beginning; 0: it doesn't
 	TolHz     float64 // of a step; 0: DefaultTolHz
 	MaxStepS  float64 // 0: no other bound than the tolerance
-	Record    bool    // keep what each resource delivers
+	// StillHzPerS is the rate of change below which, with nothing else to come, a run ends: what
+	// moves so slowly has no say in the outcome. 0: DefaultStillHzPerS.
+	StillHzPerS float64
+	// SteadyHz, if given, lets a run end from SteadyByS on where, with nothing else to come, the
+	// deviation would not reach it in a minute at the rate it moves at.
+	SteadyHz float64
+	Record   bool // keep what each resource delivers; it then runs to the end
 }
+
+// DefaultStillHzPerS lets a run end where nothing would move by a millihertz in an hour.
+const DefaultStillHzPerS = 3e-7
 
 // DefaultTolHz bounds the error of one step.
 const DefaultTolHz = 5e-6
