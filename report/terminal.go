@@ -31,6 +31,7 @@ func Summary(w io.Writer, c *fleet.Case, hours, without []solve.Hour, o Options)
 		p.whatBinds()
 		p.worths()
 	}
+	p.closedLoop()
 	p.inertia()
 	if !o.WithoutLimits {
 		p.machines()
