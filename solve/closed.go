@@ -36,12 +36,8 @@ func (s *Solver) prepareClosed() {
 		s.models[m.Shape] = m.Model
 		s.closed = true
 	}
-	s.synthetic = make([]*dynamic.Model, len(s.c.Resources))
 	for i := range s.c.Resources {
-		if f := s.c.Resources[i].SyntheticS; f > 0 {
-			s.synthetic[i] = &dynamic.Model{Kind: dynamic.Synthetic, FilterS: f}
-			s.closed = true
-		}
+		s.closed = s.closed || s.c.Resources[i].SyntheticS > 0
 	}
 	s.sims.New = func() any { return new(dynamic.Simulator) }
 }
@@ -99,56 +95,12 @@ type failure struct {
 	rocofS float64
 }
 
-// online describes a mix to the simulation. unit and promise give the place of each class's
-// response and of each shape's promise, −1 for none.
-func (s *Solver) online(q *search, st *state) (sys *dynamic.System, unit, synth, promise []int) {
-	p := q.m.p
-	sys = &dynamic.System{NominalHz: p.Limits.NominalHz, LoadMW: p.Hour.DemandMW - st.unserved, InertiaMWs: st.inertia}
-	if p.Hour.DemandMW > 0 {
-		sys.DampingPctPerHz = 100 * p.Hour.DampingMWPerHz / p.Hour.DemandMW
-	}
-	unit, synth, promise = make([]int, len(p.Classes)), make([]int, len(p.Classes)), make([]int, len(p.Shapes))
-	for i := range promise {
-		promise[i] = -1
-	}
-	for c := range p.Classes {
-		unit[c], synth[c] = -1, -1
-		cl, part, n := &p.Classes[c], &st.class[c], float64(q.commit[c])
-		res := &s.c.Resources[cl.Unit]
-		if n == 0 {
-			continue
-		}
-		if part.response > 1e-6 {
-			if m := s.models[cl.Shape]; m != nil {
-				unit[c] = len(sys.Units)
-				sys.Units = append(sys.Units, dynamic.Unit{Name: res.Name, Model: m, N: n, RatingMW: res.Base(), UpMW: part.response / n})
-			} else {
-				if promise[cl.Shape] < 0 {
-					promise[cl.Shape] = len(sys.Promises)
-					sys.Promises = append(sys.Promises, dynamic.Promise{Name: s.c.Shapes[cl.Shape].Name, Shape: s.c.Shapes[cl.Shape].Shape})
-				}
-				sys.Promises[promise[cl.Shape]].MW += part.response
-			}
-		}
-		if m := s.synthetic[cl.Unit]; m != nil && part.inertia > 1e-6 {
-			u := &p.Hour.Units[cl.Unit]
-			power := math.Inf(1)
-			if u.HeadPerMWs > 0 {
-				power = u.HeadPerMWs * part.inertia / n
-			}
-			synth[c] = len(sys.Units)
-			sys.Units = append(sys.Units, dynamic.Unit{Name: res.Name + " (synthetic inertia)", Model: m, N: n, RatingMW: res.Base(), UpMW: power, DownMW: power, SyntheticMWs: part.inertia / n})
-			sys.InertiaMWs -= part.inertia
-		}
-	}
-	return sys, unit, synth, promise
-}
-
 // simulate runs the losses that come near to a limit and fills in out.Closed. It gives those
 // that fail.
 func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search, st *state, out *Hour) []failure {
 	p := q.m.p
-	sys, unit, synth, promise := s.online(q, st)
+	on := NewOnline(s.c, p.Hour, out.Dispatch, st.unserved)
+	sys := &on.Sys
 	l := p.Limits
 	limit := [limits.Kinds]float64{l.MaxHzPerS, l.NadirHz, l.SteadyHz}
 	opt := s.closedOptions()
@@ -163,7 +115,6 @@ func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search
 	}
 	type candidate struct {
 		loss      *formulate.Loss
-		mw, left  float64
 		severity  float64 // of the open-loop replay, by the limit nearest to it
 		triggered bool    // it passes a limit without the responses that must be set off
 	}
@@ -179,7 +130,7 @@ func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search
 		}
 		e := replay.Event{LossMW: mw, InertiaMWs: left, DampingMWPerHz: damping, ResponseMW: response}
 		o := open.Run(e)
-		c := candidate{loss: loss, mw: mw, left: left, severity: severity(o.RoCoFHzPerS, o.NadirHz, o.SteadyHz)}
+		c := candidate{loss: loss, severity: severity(o.RoCoFHzPerS, o.NadirHz, o.SteadyHz)}
 		if triggered {
 			for i, m := range s.models {
 				if m != nil && m.Kind == dynamic.Step {
@@ -202,40 +153,14 @@ func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search
 		if !near && out.Closed.Simulated > 0 {
 			continue
 		}
-		loss, mw, left := c.loss, c.mw, c.left
-		d := dynamic.Loss{Name: loss.Name, MW: mw}
-		for _, c := range loss.Classes {
-			share := q.share(loss, c)
-			if u := unit[c]; u >= 0 {
-				d.Units = append(d.Units, dynamic.Gone{Index: u, Much: share * float64(q.commit[c])})
-			}
-			if u := synth[c]; u >= 0 {
-				d.Units = append(d.Units, dynamic.Gone{Index: u, Much: share * float64(q.commit[c])})
-			}
-			if sh := p.Classes[c].Shape; sh >= 0 && s.models[sh] == nil && promise[sh] >= 0 {
-				d.Promises = append(d.Promises, dynamic.Gone{Index: promise[sh], Much: share * st.class[c].response})
-			}
-		}
-		// Kinetic energy left, but for what a filter makes, which is a unit of its own.
-		filtered := 0.0
-		for c := range synth {
-			if synth[c] >= 0 {
-				filtered += st.class[c].inertia
-			}
-		}
-		for _, c := range loss.Classes {
-			if synth[c] >= 0 {
-				filtered -= q.share(loss, c) * st.class[c].inertia
-			}
-		}
-		d.InertiaMWs = sys.InertiaMWs - (left - filtered)
+		d := s.trip(on, p, c.loss)
 		o := sim.Run(sys, []dynamic.Loss{d}, opt)
 		cl := &out.Closed
 		cl.Simulated++
 		cl.RoCoFHzPerS = max(cl.RoCoFHzPerS, o.RoCoFHzPerS)
 		cl.SteadyHz = max(cl.SteadyHz, o.SteadyHz)
 		if o.NadirHz > cl.NadirHz {
-			cl.NadirHz, cl.NadirS, cl.Loss = o.NadirHz, o.NadirS, loss.Name
+			cl.NadirHz, cl.NadirS, cl.Loss = o.NadirHz, o.NadirS, c.loss.Name
 		}
 		cl.MarginHz = min(cl.MarginHz, l.NadirHz-o.NadirHz, l.SteadyHz-o.SteadyHz)
 		worst := severity(o.RoCoFHzPerS, o.NadirHz, o.SteadyHz)
@@ -250,6 +175,19 @@ func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search
 		}
 	}
 	return failed
+}
+
+// trip is a loss of the hour as the simulation sees it.
+func (s *Solver) trip(on *Online, p *formulate.Problem, l *formulate.Loss) dynamic.Loss {
+	d := dynamic.Loss{Name: l.Name, MW: l.FixedMW}
+	for _, c := range l.Classes {
+		units := 1.0
+		if !l.Single {
+			units = float64(p.Classes[c].Count)
+		}
+		on.Lose(&d, p.Classes[c].Unit, units)
+	}
+	return d
 }
 
 func (s *Solver) closedOptions() dynamic.Options {

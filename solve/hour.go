@@ -22,10 +22,9 @@ type Solver struct {
 	sys  *replay.System
 	fast []bool // shapes fully out within FastS
 
-	closed    bool             // some resource has a dynamic model
-	models    []*dynamic.Model // one a shape; nil: a promise
-	synthetic []*dynamic.Model // one a resource; nil: like inertia
-	sims      sync.Pool        // of *dynamic.Simulator
+	closed bool             // some resource has a dynamic model
+	models []*dynamic.Model // one a shape; nil: a promise
+	sims   sync.Pool        // of *dynamic.Simulator
 
 	noReplay bool // the mix is wanted for its cost alone
 }

@@ -1,0 +1,97 @@
+package solve
+
+import (
+	"math"
+
+	"evenkeel/fleet"
+	"evenkeel/limits/dynamic"
+)
+
+// Online is a mix as the closed-loop simulation sees it: who is on, with what room, and what
+// each loss takes with it.
+type Online struct {
+	Sys dynamic.System
+
+	c *fleet.Case
+	d []Dispatch
+	// Places in Sys of each resource's response and synthetic inertia and of each shape's
+	// promise; −1: none.
+	unit, synth, promise []int
+}
+
+// NewOnline describes the mix d of an hour. Response that a resource holds with a model acts by
+// it, within what it holds; any other follows its shape. Synthetic inertia with a filter acts
+// on the filtered rate of change within the power it has; any other is inertia.
+func NewOnline(c *fleet.Case, h *fleet.Hour, d []Dispatch, unservedMW float64) *Online {
+	o := &Online{c: c, d: d, Sys: dynamic.System{NominalHz: c.Limits.NominalHz, LoadMW: max(h.DemandMW-unservedMW, 0), InertiaMWs: h.LoadInertiaMWs}}
+	sys := &o.Sys
+	if h.DemandMW > 0 {
+		sys.DampingPctPerHz = 100 * h.DampingMWPerHz / h.DemandMW
+	}
+	models := make([]*dynamic.Model, len(c.Shapes))
+	for i := range c.Models {
+		models[c.Models[i].Shape] = c.Models[i].Model
+	}
+	o.promise = make([]int, len(c.Shapes))
+	for i := range o.promise {
+		o.promise[i] = -1
+	}
+	o.unit, o.synth = make([]int, len(c.Resources)), make([]int, len(c.Resources))
+	const leastMW = 1e-6
+	for i := range c.Resources {
+		res, part := &c.Resources[i], &d[i]
+		o.unit[i], o.synth[i] = -1, -1
+		n := float64(part.On)
+		if n == 0 {
+			continue
+		}
+		sys.InertiaMWs += part.InertiaMWs
+		if shape := h.Units[i].Shape; part.ResponseMW > leastMW && shape >= 0 {
+			if m := models[shape]; m != nil {
+				o.unit[i] = len(sys.Units)
+				sys.Units = append(sys.Units, dynamic.Unit{Name: res.Name, Model: m, N: n, RatingMW: res.Base(), UpMW: part.ResponseMW / n})
+			} else {
+				if o.promise[shape] < 0 {
+					o.promise[shape] = len(sys.Promises)
+					sys.Promises = append(sys.Promises, dynamic.Promise{Name: c.Shapes[shape].Name, Shape: c.Shapes[shape].Shape})
+				}
+				sys.Promises[o.promise[shape]].MW += part.ResponseMW
+			}
+		}
+		if res.SyntheticS > 0 && part.InertiaMWs > leastMW {
+			power := math.Inf(1)
+			if k := h.Units[i].HeadPerMWs; k > 0 {
+				power = k * part.InertiaMWs / n
+			}
+			o.synth[i] = len(sys.Units)
+			sys.Units = append(sys.Units, dynamic.Unit{Name: res.Name + " (synthetic inertia)", Model: &dynamic.Model{Kind: dynamic.Synthetic, FilterS: res.SyntheticS},
+				N: n, RatingMW: res.Base(), UpMW: power, DownMW: power, SyntheticMWs: part.InertiaMWs / n})
+			sys.InertiaMWs -= part.InertiaMWs
+		}
+	}
+	return o
+}
+
+// Lose is the loss of so many units of a resource: their output, their inertia and their
+// response. It adds to what l holds already.
+func (o *Online) Lose(l *dynamic.Loss, resource int, units float64) {
+	part := &o.d[resource]
+	if part.On == 0 {
+		return
+	}
+	units = min(units, float64(part.On))
+	share := units / float64(part.On)
+	l.MW += share * part.OutputMW
+	if o.synth[resource] >= 0 {
+		l.Units = append(l.Units, dynamic.Gone{Index: o.synth[resource], Much: units})
+	} else {
+		l.InertiaMWs += share * part.InertiaMWs
+	}
+	if u := o.unit[resource]; u >= 0 {
+		l.Units = append(l.Units, dynamic.Gone{Index: u, Much: units})
+	} else if part.ResponseMW > 0 {
+		if shape := o.c.Resources[resource].Response.Shape; shape >= 0 && o.promise[shape] >= 0 {
+			l.Promises = append(l.Promises, dynamic.Gone{Index: o.promise[shape], Much: share * part.ResponseMW})
+		}
+	}
+}
