@@ -23,9 +23,11 @@ const (
 	// The loss that comes nearest to a limit in open loop is simulated, and every other one that
 	// would pass a limit if closed loop were worse than open loop by this much more than it was so
 	// far. In a slower fall triggered responses act later: a loss that needs them is simulated if
-	// it comes near to a limit at all.
+	// it comes near to a limit at all. Droop delivers less of what it holds the less frequency
+	// falls, so a loss that takes nearly all of what it delivers at the steady limit is simulated.
 	closedSlack   = 1.1
 	triggeredFrom = 0.75
+	staticFrom    = 0.6
 )
 
 // prepareClosed notes which responses follow a model.
@@ -115,6 +117,8 @@ func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search
 	}
 	type candidate struct {
 		loss      *formulate.Loss
+		trip      dynamic.Loss
+		static    float64 // share of the response that droop delivers at the steady limit which the loss takes
 		severity  float64 // of the open-loop replay, by the limit nearest to it
 		triggered bool    // it passes a limit without the responses that must be set off
 	}
@@ -140,6 +144,8 @@ func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search
 			o = open.Run(e)
 			c.triggered = severity(o.RoCoFHzPerS, o.NadirHz, o.SteadyHz) > 1
 		}
+		c.trip = s.trip(on, p, loss)
+		c.static = (c.trip.MW - damping*l.SteadyHz) / max(s.atRest(sys, &c.trip), 1e-9)
 		list = append(list, c)
 	}
 	slices.SortStableFunc(list, func(a, b candidate) int { return cmp.Compare(b.severity, a.severity) })
@@ -149,11 +155,11 @@ func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search
 		if len(failed) == mostRecorded {
 			break // they tell the others' story too: what they miss shows in the next round
 		}
-		near := c.severity*ratio*closedSlack > 1 || c.triggered && c.severity > triggeredFrom
+		near := c.severity*ratio*closedSlack > 1 || c.static > staticFrom || c.triggered && c.severity > triggeredFrom
 		if !near && out.Closed.Simulated > 0 {
 			continue
 		}
-		d := s.trip(on, p, c.loss)
+		d := c.trip
 		o := sim.Run(sys, []dynamic.Loss{d}, opt)
 		cl := &out.Closed
 		cl.Simulated++
@@ -175,6 +181,33 @@ func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search
 		}
 	}
 	return failed
+}
+
+// atRest is the MW that what a loss leaves delivers at the steady limit.
+func (s *Solver) atRest(sys *dynamic.System, d *dynamic.Loss) float64 {
+	l := s.c.Limits
+	mw := 0.0
+	for i := range sys.Units {
+		u := &sys.Units[i]
+		n := u.N
+		for _, g := range d.Units {
+			if g.Index == i {
+				n -= g.Much
+			}
+		}
+		mw += n * u.AtRest(l.NominalHz, l.SteadyHz, l.SteadyByS, l.SteadyUntilS)
+	}
+	for i := range sys.Promises {
+		p := &sys.Promises[i]
+		left := p.MW
+		for _, g := range d.Promises {
+			if g.Index == i {
+				left -= g.Much
+			}
+		}
+		mw += left * min(p.Shape.At(l.SteadyByS), p.Shape.Before(l.SteadyUntilS))
+	}
+	return mw
 }
 
 // trip is a loss of the hour as the simulation sees it.
