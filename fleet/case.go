@@ -44,6 +44,8 @@ type Case struct {
 	Resources []Resource
 	// Connections are groups of resources lost together, besides each alone.
 	Connections []Connection
+	// Relays act on frequency: load shedding, generation that trips.
+	Relays []Relay
 	// Losses are losses that are not (only) a resource of the case.
 	Losses []Loss
 }
@@ -143,6 +145,19 @@ type Resource struct {
 type Connection struct {
 	Name      string
 	Resources []int
+}
+
+// Relay switches load or generation off where frequency stays beyond its setting.
+type Relay struct {
+	Name      string
+	Over      bool    // the level lies above nominal
+	LevelHz   float64 // from nominal; 0: none
+	HzPerS    float64 // rate of change, either way; 0: none
+	WindowS   float64
+	DelayS    float64
+	ShedShare float64 // of the load
+	LostMW    Value   // of generation
+	LostMWs   Value   // and its kinetic energy
 }
 
 // Loss is a loss of a given size, possibly taking resources with it.

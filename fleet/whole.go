@@ -12,7 +12,7 @@ import (
 )
 
 var (
-	wholeKeys     = []string{"case", "note", "currency", "frequency", "prices", "load", "hours", "shapes", "models", "machines", "converters", "connections", "losses"}
+	wholeKeys     = []string{"case", "note", "currency", "frequency", "prices", "load", "hours", "shapes", "models", "machines", "converters", "connections", "losses", "relays"}
 	frequencyKeys = []string{"nominal_hz", "rocof", "nadir", "steady"}
 	rocofKeys     = []string{"max_hz_per_s", "window_s"}
 	nadirKeys     = []string{"max_deviation_hz"}
@@ -46,6 +46,7 @@ func (r *reader) whole(root *yaml.Node) {
 	r.qualify()
 	r.connections(s)
 	r.losses(s)
+	r.relays(s)
 	if r.times == nil && !r.clockLost {
 		s.missing("hours", "start and count, as no value of the case is a series")
 	}

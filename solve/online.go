@@ -69,6 +69,11 @@ func NewOnline(c *fleet.Case, h *fleet.Hour, d []Dispatch, unservedMW float64) *
 			sys.InertiaMWs -= part.InertiaMWs
 		}
 	}
+	for i := range c.Relays {
+		r := &c.Relays[i]
+		sys.Relays = append(sys.Relays, dynamic.Relay{Name: r.Name, Over: r.Over, LevelHz: r.LevelHz, HzPerS: r.HzPerS, WindowS: r.WindowS, DelayS: r.DelayS,
+			ShedShare: r.ShedShare, LostMW: r.LostMW.At(h.Index), InertiaMWs: r.LostMWs.At(h.Index)})
+	}
 	return o
 }
 

@@ -89,6 +89,9 @@ func (s *Simulator) segment() (still bool) {
 	h := firstStepS
 	for s.t < to {
 		h = min(h, s.maxDelayS, to-s.t)
+		if math.Abs(s.k1[0]) > s.rateFrom {
+			h = min(h, s.rateStepS)
+		}
 		if s.opt.MaxStepS > 0 {
 			h = min(h, s.opt.MaxStepS)
 		}

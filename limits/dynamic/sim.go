@@ -34,6 +34,8 @@ type Simulator struct {
 	accel     float64 // f0/(2·E)
 	damping   float64 // MW/Hz
 	maxDelayS float64 // least measuring delay: no step may be longer
+	rateStepS float64 // nor longer than this where frequency changes faster than rateFrom: relays watch
+	rateFrom  float64 // Hz/s
 
 	lineFrom, lineMW, lineSlope float64 // promises and triggered responses: MW at lineFrom and MW/s
 
@@ -123,7 +125,7 @@ func (s *Simulator) start(sys *System, losses []Loss, o Options) {
 	s.lumps = s.lumps[:0]
 	s.steps = s.steps[:0]
 	n := 1
-	s.maxDelayS = math.Inf(1)
+	s.maxDelayS, s.rateStepS, s.rateFrom = math.Inf(1), math.Inf(1), math.Inf(1)
 	s.home = s.home[:0]
 	for i := range sys.Units {
 		u := &sys.Units[i]
@@ -173,7 +175,7 @@ func (s *Simulator) start(sys *System, losses []Loss, o Options) {
 	for _, r := range sys.Relays {
 		s.relay = append(s.relay, relay{Relay: r})
 		if r.HzPerS > 0 && r.WindowS > 0 {
-			s.maxDelayS = min(s.maxDelayS, r.WindowS/2)
+			s.rateStepS, s.rateFrom = min(s.rateStepS, r.WindowS/4), min(s.rateFrom, r.HzPerS/3)
 		}
 	}
 	s.promised = s.promised[:0]
