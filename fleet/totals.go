@@ -49,3 +49,12 @@ func (r *Resource) share(h int) float64 {
 	}
 	return 1
 }
+
+// MeanDemandMW is the mean of the load over all hours.
+func (c *Case) MeanDemandMW() float64 {
+	sum := 0.0
+	for h := range c.Times {
+		sum += c.Load.DemandMW.At(h)
+	}
+	return sum / float64(len(c.Times))
+}

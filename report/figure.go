@@ -4,6 +4,7 @@ import (
 	"bytes"
 	"io"
 
+	"gonum.org/v1/plot"
 	"gonum.org/v1/plot/vg"
 	"gonum.org/v1/plot/vg/draw"
 	"gonum.org/v1/plot/vg/vgimg"
@@ -17,6 +18,18 @@ const pngDPI = 150
 type figure struct {
 	width, height vg.Length
 	draw          func(draw.Canvas)
+}
+
+// drawStacked draws two plots one above the other, their data starting at the same left edge.
+func drawStacked(upper *plot.Plot, above draw.Canvas, lower *plot.Plot, below draw.Canvas) {
+	a, b := upper.DataCanvas(above).Min.X, lower.DataCanvas(below).Min.X
+	if a > b {
+		below = draw.Crop(below, a-b, 0, 0, 0)
+	} else {
+		above = draw.Crop(above, b-a, 0, 0, 0)
+	}
+	upper.Draw(above)
+	lower.Draw(below)
 }
 
 // svg writes the figure as SVG. Text stays text: where Liberation Sans is not

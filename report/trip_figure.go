@@ -152,8 +152,7 @@ func tripFigure(t *study.Trip) figure {
 			names.FillText(sans(8.5, ink, draw.XLeft, draw.YCenter), vg.Point{X: names.Min.X + vg.Points(18), Y: y}, fit(e.name, sans(8.5, ink, draw.XLeft, draw.YCenter), vg.Points(132)))
 		}
 		wide := draw.Crop(area, 0, -vg.Points(160), 0, 0)
-		upper.Draw(draw.Crop(wide, 0, 0, half, 0))
-		lower.Draw(draw.Crop(wide, 0, 0, 0, -half-vg.Points(6)))
+		drawStacked(upper, draw.Crop(wide, 0, 0, half, 0), lower, draw.Crop(wide, 0, 0, 0, -half-vg.Points(6)))
 	}}
 }
 
