@@ -80,7 +80,7 @@ func MatchText(w io.Writer, f *study.Fit, event string, dropped int) error {
 	p.fact("Lost", fmt.Sprintf("%s MW of %s MW of load, at %s s of the record", grouped(f.LostMW, 1), grouped(f.LoadMW, 1), fixed(f.StartS, 2)))
 	p.fact("Record", fmt.Sprintf("%s of noise a sample; %s left by the fit; offset %s Hz before the loss", mHz(f.NoiseHz), mHz(f.Residual), fixed(f.OffsetHz, 4)))
 	if dropped > 0 {
-		p.fact("", fmt.Sprintf("%s lines without a time or a frequency left out", count(dropped)))
+		p.fact("", fmt.Sprintf("lines without a time or a frequency left out: %s", count(dropped)))
 	}
 	p.section("What the record says (95 % confidence)")
 	for _, e := range f.Estimates[:4] {

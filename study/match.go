@@ -58,6 +58,10 @@ const (
 
 var parNames = [pars][2]string{{"kinetic energy", "MW·s"}, {"load damping", "MW/Hz"}, {"response gain", "MW/Hz"}, {"response lag", "s"}, {"start of the loss", "s"}, {"offset before it", "Hz"}}
 
+// DefaultAfterS is how much of a record is fitted: by then primary response is out and slower
+// reserves, which the model does not have, are not.
+const DefaultAfterS = 40
+
 // ErrNoEvent says that a record holds no event that could be fitted.
 var ErrNoEvent = errors.New("the record holds no event: frequency never leaves what it was before by more than its own noise")
 
@@ -71,7 +75,12 @@ var ErrNoEvent = errors.New("the record holds no event: frequency never leaves w
 // them apart only if it is quick and quiet enough; what it cannot tell is said to be so. The
 // fit is a least-squares fit (gonum's optimize), its intervals come from the curvature at the
 // optimum, with the noise's own correlation in time allowed for.
-func Match(r *Record, nominalHz, loadMW, lostMW float64) (*Fit, error) {
+//
+// Only the first afterS seconds after the loss are fitted; 0: DefaultAfterS.
+func Match(r *Record, nominalHz, loadMW, lostMW, afterS float64) (*Fit, error) {
+	if afterS == 0 {
+		afterS = DefaultAfterS
+	}
 	r = clean(r)
 	if len(r.S) < 20 {
 		return nil, fmt.Errorf("the record has %d usable samples, want at least 20", len(r.S))
@@ -83,7 +92,7 @@ func Match(r *Record, nominalHz, loadMW, lostMW float64) (*Fit, error) {
 	if err != nil {
 		return nil, err
 	}
-	use := thin(window(r, start, 40), start)
+	use := thin(window(r, start, afterS), start)
 	m := &matcher{r: use, f0: nominalHz, lost: lostMW}
 	best, err := m.fit(start, offset)
 	if err != nil {

@@ -37,7 +37,7 @@ func TestMatchRecoversTheSystem(t *testing.T) {
 		inertia, damping, gain, lag := 12_000+16_000*rng.Float64(), 30+40*rng.Float64(), 400+500*rng.Float64(), 1.5+3*rng.Float64()
 		every := []float64{0.01, 0.02, 0.05, 0.1}[seed%4]
 		r, lead := noisy(rng, every, 0.001, inertia, damping, gain, lag, 200)
-		f, err := Match(r, 50, 5000, 200)
+		f, err := Match(r, 50, 5000, 200, 0)
 		if err != nil {
 			t.Fatalf("seed %d: %v", seed, err)
 		}
@@ -65,7 +65,7 @@ func TestMatchRecoversTheSystem(t *testing.T) {
 func TestMatchTakesWhatThereIs(t *testing.T) {
 	rng := rand.New(rand.NewPCG(1, 6))
 	r, _ := noisy(rng, 0.5, 0.001, 20_000, 40, 600, 3, 200)
-	f, err := Match(r, 50, 5000, 200)
+	f, err := Match(r, 50, 5000, 200, 0)
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -76,7 +76,7 @@ func TestMatchTakesWhatThereIs(t *testing.T) {
 	for i := 0; i < len(r.Hz); i += 17 {
 		r.Hz[i] = math.NaN()
 	}
-	f, err = Match(r, 50, 5000, -200)
+	f, err = Match(r, 50, 5000, -200, 0)
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -95,7 +95,7 @@ func TestMatchRefusesQuietRecords(t *testing.T) {
 			drift += 0.0003 * rng.NormFloat64() // frequency wanders
 			r.S, r.Hz = append(r.S, s), append(r.Hz, 50+drift+0.001*rng.NormFloat64())
 		}
-		if f, err := Match(r, 50, 5000, 200); !errors.Is(err, ErrNoEvent) {
+		if f, err := Match(r, 50, 5000, 200, 0); !errors.Is(err, ErrNoEvent) {
 			t.Errorf("seed %d: %v, %v", seed, err, f != nil)
 		}
 	}
@@ -105,7 +105,7 @@ func TestMatchRefusesQuietRecords(t *testing.T) {
 func TestMatchSaysWhatItCannotTell(t *testing.T) {
 	rng := rand.New(rand.NewPCG(3, 8))
 	r, _ := noisy(rng, 0.5, 0.003, 20_000, 100, 200, 0.05, 200)
-	f, err := Match(r, 50, 5000, 200)
+	f, err := Match(r, 50, 5000, 200, 0)
 	if err != nil {
 		t.Fatal(err)
 	}

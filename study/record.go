@@ -18,6 +18,7 @@ func ReadRecord(r io.Reader, name string) (rec *Record, dropped int, err error) 
 	lines := bufio.NewScanner(r)
 	lines.Buffer(nil, 1<<20)
 	var first time.Time
+	headed := false
 	for n := 1; lines.Scan(); n++ {
 		text := strings.TrimSpace(strings.TrimPrefix(lines.Text(), "\uFEFF"))
 		if text == "" || strings.HasPrefix(text, "#") {
@@ -33,9 +34,10 @@ func ReadRecord(r io.Reader, name string) (rec *Record, dropped int, err error) 
 		}
 		hz, errHz := strconv.ParseFloat(strings.Replace(fields[1], ",", ".", 1), 64)
 		if !okTime || errHz != nil || math.IsNaN(hz) || math.IsInf(hz, 0) {
-			if n > 1 || len(rec.S) > 0 { // the first line may be a header
+			if headed || len(rec.S) > 0 { // the first line may be a header
 				dropped++
 			}
+			headed = true
 			continue
 		}
 		if hz < 0 || hz > 1000 {

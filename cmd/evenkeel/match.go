@@ -14,7 +14,7 @@ import (
 func matchCommand() *cobra.Command {
 	var (
 		event, state, out string
-		lost, load        float64
+		lost, load, after float64
 	)
 	cmd := &cobra.Command{
 		Use:   "match CASE --event EVENT.csv --lost MW",
@@ -26,6 +26,9 @@ func matchCommand() *cobra.Command {
 		RunE: func(cmd *cobra.Command, args []string) error {
 			if event == "" || lost == 0 {
 				return bad("match needs --event EVENT.csv and --lost MW, not 0 (negative: load)")
+			}
+			if !(after >= 1) {
+				return bad("--after is %g s, want at least 1", after)
 			}
 			c, err := read(cmd, args[0], true)
 			if err != nil {
@@ -53,7 +56,7 @@ func matchCommand() *cobra.Command {
 			if err != nil {
 				return bad("%w", err)
 			}
-			fit, err := study.Match(rec, c.Limits.NominalHz, load, lost)
+			fit, err := study.Match(rec, c.Limits.NominalHz, load, lost, after)
 			if errors.Is(err, study.ErrNoEvent) {
 				return bad("%s: %w", event, err)
 			} else if err != nil {
@@ -74,6 +77,7 @@ func matchCommand() *cobra.Command {
 	fl.StringVar(&event, "event", "", "CSV of the recorded frequency")
 	fl.Float64Var(&lost, "lost", 0, "what was lost, `MW`")
 	fl.Float64Var(&load, "load", 0, "load at the event, `MW`; 0: the case's mean")
+	fl.Float64Var(&after, "after", study.DefaultAfterS, "`seconds` after the loss that are fitted")
 	fl.StringVar(&state, "state", "", "YAML file of the state at the event, for its load")
 	fl.StringVar(&out, "out", "", "folder to write match.csv, match.svg, match.png and fitted.yaml to")
 	return cmd

@@ -262,3 +262,27 @@ func TestRecordedEventOf2019(t *testing.T) {
 		t.Errorf("48.8 Hz reached at %.1f s, published after the second loss at 57 s; lowest %.3f", reached, 50-o.NadirHz)
 	}
 }
+
+// A loss at 20 s does 20 s later what it does at 0 s, jumps of shapes and of courses included.
+func TestLaterLossDoesTheSame(t *testing.T) {
+	jump, err := limits.Timing{DelayS: 0.2, RampS: 0.6, HoldS: 8, WithdrawS: 2, RecoveryShare: 0.3, RecoveryS: 15}.Shape() // comes back at once
+	if err != nil {
+		t.Fatal(err)
+	}
+	step := &Model{Kind: Step, LevelHz: 0.15, Course: limits.Timing{DelayS: 0.1, HoldS: 20, WithdrawS: 0}, RestS: 900}
+	gas := Defaults(Gas)
+	sys := &System{NominalHz: 50, LoadMW: 400, DampingPctPerHz: 1, InertiaMWs: 2000, Units: []Unit{
+		{Name: "s", Model: step, N: 1, RatingMW: 20, UpMW: 12}, {Name: "g", Model: &gas, N: 3, RatingMW: 60, UpMW: 12}},
+		Promises: []Promise{{"p", jump, 10}}}
+	opt := Options{WindowS: 0.5, SteadyByS: 30, UntilS: 60, TolHz: 1e-7}
+	a := run(t, sys, []Loss{{MW: 50}}, opt)
+	for _, at := range []float64{0.1, 7.3, 20, 33.337} {
+		b := run(t, sys, []Loss{{AtS: at, MW: 50}}, opt)
+		near(t, "nadir", b.NadirHz, a.NadirHz, 1e-5)
+		near(t, "instant of the nadir", b.NadirS-at, a.NadirS, 0.02)
+		near(t, "steady", b.SteadyHz, a.SteadyHz, 1e-5)
+		for _, s := range []float64{5, 19, 21, 25.5, 26.5, 40} {
+			near(t, fmt.Sprintf("at %g + %g s", at, s), deviationAt(&b, at+s), deviationAt(&a, s), 1e-4)
+		}
+	}
+}

@@ -3,6 +3,7 @@ package dynamic
 import (
 	"math"
 
+	"evenkeel/limits"
 	"evenkeel/limits/replay"
 )
 
@@ -10,13 +11,10 @@ import (
 // next event.
 func (s *Simulator) line(to float64) {
 	a, b := 0.0, 0.0
-	add := func(mw, from float64, at, before func(float64) float64) {
-		a += mw * at(s.t-from)
-		b += mw * before(to-from)
-	}
 	for i := range s.promised {
 		if p := &s.promised[i]; p.mw != 0 && s.next > 0 {
-			add(p.mw, p.from, p.shape.At, p.shape.Before)
+			a += p.mw * after(p.shape, s.t-p.from)
+			b += p.mw * before(p.shape, to-p.from)
 		}
 	}
 	// Both directions of a unit are joined first: sums must not depend on which is which.
@@ -26,14 +24,20 @@ func (s *Simulator) line(to float64) {
 		ua, ub := 0.0, 0.0
 		for ; i < len(s.steps) && s.steps[i].unit == unit; i++ {
 			if st := &s.steps[i]; st.active {
-				ua += st.sign * st.mw * n * st.shape.At(s.t-st.from)
-				ub += st.sign * st.mw * n * st.shape.Before(to-st.from)
+				ua += st.sign * st.mw * n * after(st.shape, s.t-st.from)
+				ub += st.sign * st.mw * n * before(st.shape, to-st.from)
 			}
 		}
 		a, b = a+ua, b+ub
 	}
 	s.lineFrom, s.lineMW, s.lineSlope = s.t, a, (b-a)/(to-s.t)
 }
+
+// Instants are sums, off by rounding: a shape that jumps at one is read a hair to the side.
+const hairS = 1e-9
+
+func after(shape limits.Shape, t float64) float64  { return shape.At(t + hairS) }
+func before(shape limits.Shape, t float64) float64 { return shape.Before(t - hairS) }
 
 // derive fills dy at instant t.
 func (s *Simulator) derive(t float64, y, dy []float64) {

@@ -3,6 +3,7 @@ package dynamic
 import (
 	"math"
 
+	"evenkeel/limits"
 	"evenkeel/limits/replay"
 )
 
@@ -46,14 +47,11 @@ func (s *Simulator) stepMW(unit int, t float64, before bool) float64 {
 	return mw
 }
 
-func share(shape interface {
-	At(float64) float64
-	Before(float64) float64
-}, t float64, before bool) float64 {
-	if before {
-		return shape.Before(t)
+func share(shape limits.Shape, t float64, early bool) float64 {
+	if early {
+		return before(shape, t)
 	}
-	return shape.At(t)
+	return after(shape, t)
 }
 
 func (s *Simulator) promisedMW(i int, t float64, before bool) float64 {
