@@ -143,6 +143,9 @@ func (lp *LP) lessKeys(rhs []float64) {
 		if g.Shape >= 0 {
 			r[g.Shape] += c.R
 		}
+		if g.Down > 0 {
+			r[g.Down] += c.D
+		}
 	}
 	for i, row := range lp.rows {
 		sum := row.P*p + row.E*e
@@ -154,7 +157,7 @@ func (lp *LP) lessKeys(rhs []float64) {
 			o := &row.Own[k]
 			for _, j := range lp.members[o.Group] {
 				c := &lp.groups[o.Group].Cols[lp.sets[j].key]
-				rhs[i] += o.P*c.P + o.E*c.E + o.R*c.R
+				rhs[i] += o.P*c.P + o.E*c.E + o.R*c.R + o.D*c.D
 			}
 		}
 	}

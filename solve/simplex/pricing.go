@@ -5,6 +5,7 @@ type pricing struct {
 	val     [][]float64 // val[g][j] = scale·cost − vector·column, scale 1 or 0
 	r       []float64   // price of R, one a shape
 	p, e, x []float64   // what a group's own rows take off
+	d       []float64
 	touched []int
 }
 
@@ -14,6 +15,7 @@ func (v *pricing) init(groups []*Group, shapes int) {
 	v.p = make([]float64, len(groups))
 	v.e = make([]float64, len(groups))
 	v.x = make([]float64, len(groups))
+	v.d = make([]float64, len(groups))
 }
 
 // run values all usable columns: withCost·cost − vector·a.
@@ -22,7 +24,7 @@ func (v *pricing) run(lp *LP, vector []float64, withCost float64) {
 	r := v.r
 	clear(r)
 	for _, g := range v.touched {
-		v.p[g], v.e[g], v.x[g] = 0, 0, 0
+		v.p[g], v.e[g], v.x[g], v.d[g] = 0, 0, 0, 0
 	}
 	v.touched = v.touched[:0]
 	for i, row := range lp.rows {
@@ -40,6 +42,7 @@ func (v *pricing) run(lp *LP, vector []float64, withCost float64) {
 			v.p[o.Group] += y * o.P
 			v.e[o.Group] += y * o.E
 			v.x[o.Group] += y * o.R
+			v.d[o.Group] += y * o.D
 			v.touched = append(v.touched, o.Group)
 		}
 	}
@@ -52,6 +55,10 @@ func (v *pricing) run(lp *LP, vector []float64, withCost float64) {
 		if len(val) < len(group.Cols) {
 			val = make([]float64, len(group.Cols), 2*len(group.Cols))
 			v.val[g] = val
+		}
+		if group.Down > 0 {
+			v.both(lp, g, val, gp, ge, gr, r[group.Down]-v.d[g], withCost)
+			continue
 		}
 		if lp.active[g] == nil {
 			for j := range group.Cols {
@@ -77,6 +84,22 @@ func (v *pricing) run(lp *LP, vector []float64, withCost float64) {
 	}
 }
 
+// both values a group whose columns have both R and D.
+func (v *pricing) both(lp *LP, g int, val []float64, gp, ge, gr, gd, withCost float64) {
+	cols := lp.groups[g].Cols
+	if lp.active[g] == nil {
+		for j := range cols {
+			c := &cols[j]
+			val[j] = withCost*c.Cost - (gp*c.P + ge*c.E + gr*c.R + gd*c.D)
+		}
+		return
+	}
+	for _, j := range lp.active[g] {
+		c := &cols[j]
+		val[j] = withCost*c.Cost - (gp*c.P + ge*c.E + gr*c.R + gd*c.D)
+	}
+}
+
 func (v *pricing) one(lp *LP, g int, j int32, p, e, withCost float64) {
 	group := lp.groups[g]
 	if lp.active[g] == nil {
@@ -86,6 +109,10 @@ func (v *pricing) one(lp *LP, g int, j int32, p, e, withCost float64) {
 	if group.Shape >= 0 {
 		gr += v.r[group.Shape]
 	}
+	gd := -v.d[g]
+	if group.Down > 0 {
+		gd += v.r[group.Down]
+	}
 	c := &group.Cols[j]
-	v.val[g][j] = withCost*c.Cost - ((p-v.p[g])*c.P + (e-v.e[g])*c.E + gr*c.R)
+	v.val[g][j] = withCost*c.Cost - ((p-v.p[g])*c.P + (e-v.e[g])*c.E + gr*c.R + gd*c.D)
 }

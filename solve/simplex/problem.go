@@ -1,19 +1,20 @@
 package simplex
 
-// Column is one choice of a set: a cost and the three quantities that rows see.
+// Column is one choice of a set: a cost and the quantities that rows see.
 type Column struct {
-	Cost    float64
-	P, E, R float64
+	Cost       float64
+	P, E, R, D float64
 }
 
 // Group is the columns that sets choose from. Sets of one group are alike.
 type Group struct {
 	Shape  int      // which of a row's R coefficients holds for R; −1: none
+	Down   int      // which of them holds for D; 0: none
 	HasOff bool     // column 0 is "off"
 	Cols   []Column // append only
 }
 
-// Row is one coupling row: Σ (P·p + E·e + R[shape]·r) − own parts ≥ RHS.
+// Row is one coupling row: Σ (P·p + E·e + R[shape]·r + R[down]·d) − own parts ≥ RHS.
 type Row struct {
 	P, E        float64
 	R           []float64 // one a shape
@@ -25,24 +26,28 @@ type Row struct {
 
 // Own is what a row leaves out of the columns of one group.
 type Own struct {
-	Group   int
-	P, E, R float64
+	Group      int
+	P, E, R, D float64
 }
 
 // coef is the coefficient of a column of group g in the row.
-func (r *Row) coef(g int, shape int, c *Column) float64 {
-	p, e, x := r.P, r.E, 0.0
-	if shape >= 0 {
-		x = r.R[shape]
+func (r *Row) coef(g int, group *Group, c *Column) float64 {
+	p, e, x, d := r.P, r.E, 0.0, 0.0
+	if group.Shape >= 0 {
+		x = r.R[group.Shape]
+	}
+	if group.Down > 0 {
+		d = r.R[group.Down]
 	}
 	for i := range r.Own {
 		if o := &r.Own[i]; o.Group == g {
 			p -= o.P
 			e -= o.E
 			x -= o.R
+			d -= o.D
 		}
 	}
-	return p*c.P + e*c.E + x*c.R
+	return p*c.P + e*c.E + x*c.R + d*c.D
 }
 
 // Status is how a solve ended.

@@ -13,11 +13,14 @@ import (
 // dear, and covering rows with parts left out of single groups. A last group with a dear
 // column that alone satisfies every row keeps it feasible.
 func randomProgram(rng *rand.Rand, groups, rows int) ([]*Group, []int, []*Row) {
-	const shapes = 4
+	const shapes = 5
 	var gs []*Group
 	var sets []int
 	for g := 0; g < groups; g++ {
 		group := &Group{Shape: rng.IntN(shapes) - 1, HasOff: rng.IntN(3) > 0}
+		if rng.IntN(2) == 0 {
+			group.Down = 1 + rng.IntN(shapes-1)
+		}
 		if group.HasOff {
 			group.Cols = append(group.Cols, Column{})
 		}
@@ -25,7 +28,7 @@ func randomProgram(rng *rand.Rand, groups, rows int) ([]*Group, []int, []*Row) {
 		e := 5 * rng.Float64()
 		for j := 0; j < 1+rng.IntN(6); j++ {
 			p := 10 * rng.Float64()
-			group.Cols = append(group.Cols, Column{Cost: on + p*(1+rng.Float64()), P: p, E: e, R: 3 * rng.Float64()})
+			group.Cols = append(group.Cols, Column{Cost: on + p*(1+rng.Float64()), P: p, E: e, R: 3 * rng.Float64(), D: 2 * rng.Float64()})
 		}
 		for n := 1 + rng.IntN(3); n > 0; n-- {
 			sets = append(sets, g)
@@ -49,6 +52,9 @@ func randomProgram(rng *rand.Rand, groups, rows int) ([]*Group, []int, []*Row) {
 				o := Own{Group: rng.IntN(groups), P: rng.Float64(), E: r.E}
 				if s := gs[o.Group].Shape; s >= 0 {
 					o.R = r.R[s]
+				}
+				if s := gs[o.Group].Down; s > 0 {
+					o.D = r.R[s]
 				}
 				r.Own = append(r.Own, o)
 			}
@@ -79,7 +85,7 @@ func peer(t *testing.T, gs []*Group, sets []int, rows []*Row) float64 {
 		b[i] = r.RHS
 		for k, v := range cols {
 			g := gs[sets[v.set]]
-			a.Set(i, k, r.coef(sets[v.set], g.Shape, &g.Cols[v.j]))
+			a.Set(i, k, r.coef(sets[v.set], g, &g.Cols[v.j]))
 		}
 		a.Set(i, len(cols)+i, -1)
 		c = append(c, r.SurplusCost)
@@ -104,7 +110,7 @@ func TestAgainstGonum(t *testing.T) {
 		t.Run("", func(t *testing.T) {
 			rng := rand.New(rand.NewPCG(seed, 1))
 			gs, sets, rows := randomProgram(rng, 2+rng.IntN(12), 1+rng.IntN(7))
-			lp := New(gs, sets, 4)
+			lp := New(gs, sets, 5)
 			for _, r := range rows {
 				lp.AddRow(r)
 			}
@@ -132,7 +138,7 @@ func checkBasis(t *testing.T, lp *LP) {
 		lhs := 0.0
 		for s := range lp.sets {
 			g := lp.groups[lp.sets[s].group]
-			lp.Each(s, func(j int32, x float64) { lhs += x * r.coef(int(lp.sets[s].group), g.Shape, &g.Cols[j]) })
+			lp.Each(s, func(j int32, x float64) { lhs += x * r.coef(int(lp.sets[s].group), g, &g.Cols[j]) })
 		}
 		if lhs < r.RHS-1e-5*(1+math.Abs(r.RHS)) {
 			t.Errorf("row %d: %g below %g", i, lhs, r.RHS)
@@ -152,7 +158,7 @@ func checkBasis(t *testing.T, lp *LP) {
 			}
 			v := g.Cols[j].Cost
 			for i, r := range lp.Rows() {
-				v -= lp.Duals()[i] * r.coef(int(st.group), g.Shape, &g.Cols[j])
+				v -= lp.Duals()[i] * r.coef(int(st.group), g, &g.Cols[j])
 			}
 			best = min(best, v)
 		}
@@ -169,7 +175,7 @@ func TestWarmEqualsCold(t *testing.T) {
 	for seed := uint64(0); seed < 500; seed++ {
 		rng := rand.New(rand.NewPCG(seed, 2))
 		gs, sets, rows := randomProgram(rng, 2+rng.IntN(20), 2+rng.IntN(8))
-		warm := New(gs, sets, 4)
+		warm := New(gs, sets, 5)
 		warm.AddRow(rows[0])
 		warm.Solve(math.Inf(1))
 		saved := warm.Save()
@@ -214,7 +220,7 @@ func TestWarmEqualsCold(t *testing.T) {
 		}
 		warm.Load(saved)
 		ws := warm.Solve(math.Inf(1))
-		cold := New(gs, sets, 4)
+		cold := New(gs, sets, 5)
 		for g, use := range uses {
 			cold.Use(g, use)
 		}
