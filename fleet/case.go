@@ -31,6 +31,8 @@ type Case struct {
 	Files []string // the series files, in the order in which the case names them
 
 	Limits limits.Limits
+	// Above are the limits above nominal, its window and times those of Limits; nil: none.
+	Above *limits.Limits
 
 	UnservedPerMWh float64 // price of load not served
 	ShortPerMW     float64 // price, per hour, of each MW of a loss that a limit does not cover
@@ -131,6 +133,7 @@ type Resource struct {
 	CO2TPerMWh  float64
 
 	Response Response
+	Down     Response // downwards, for losses of load
 
 	// Converters.
 	PowerMW         float64 // of the converter: output, response and synthetic inertia share it
@@ -165,4 +168,5 @@ type Loss struct {
 	Name      string
 	MW        Value
 	Resources []int
+	Over      bool // load is lost: frequency rises
 }

@@ -38,6 +38,12 @@ type Unit struct {
 	Shape         int     // −1: none
 	ShareOfOutput float64 // 0: none
 
+	// Response downwards: at most DownCapMW, and no more than the output lies above FootMW.
+	DownCapMW float64
+	DownPerMW float64
+	DownShape int // where DownCapMW > 0
+	FootMW    float64
+
 	SyntheticCapMWs float64
 	SyntheticPerMWs float64
 
@@ -52,6 +58,8 @@ type HourLoss struct {
 	FixedMW float64
 	Members []int // indices into Units
 	Single  bool  // one unit of Members[0] is lost; otherwise all units of every member
+	// Over: frequency rises. FixedMW are load lost, members count with what they draw.
+	Over bool
 }
 
 // HourOptions change how a case is resolved into hours.

@@ -13,16 +13,17 @@ type Point struct {
 	OutputMW   float64
 	InertiaMWs float64
 	ResponseMW float64
+	DownMW     float64
 }
 
 // Points lists the operating points of a unit that is on and puts out at most capMW:
-// every vertex of the polytope of (output, response, synthetic inertia), subdivided
+// every vertex of the polytope of (output, response, response downwards, synthetic inertia), subdivided
 // at the steps of its marginal cost. Convex combinations of them are exactly what the
 // unit can do when on. There is none where the unit cannot run under the cap.
 //
 // The set of outputs visited holds every output at which the cross-section in response
 // and synthetic inertia changes its form; each cross-section is a box less a corner,
-// and its vertices are listed.
+// and its vertices are listed, each without response downwards and with the most of it.
 func Points(u *fleet.Unit, capMW float64) []Point {
 	const eps = 1e-9
 	top := min(u.MaxMW, capMW)
@@ -53,6 +54,10 @@ func Points(u *fleet.Unit, capMW float64) []Point {
 		visit(u.HeadMW / (1 + head*share))
 		visit((u.HeadMW - synth) / (1 + head*share))
 	}
+	if u.DownCapMW > 0 {
+		visit(u.FootMW + u.DownCapMW)
+		visit(u.FootMW)
+	}
 	slices.Sort(outputs)
 	outputs = slices.CompactFunc(outputs, func(a, b float64) bool { return math.Abs(b-a) < eps })
 
@@ -67,13 +72,20 @@ func Points(u *fleet.Unit, capMW float64) []Point {
 			most = min(most, room)
 		}
 		cost := u.OnCost + OutputCost(u.Steps, p)
+		down := max(min(u.DownCapMW, p-u.FootMW), 0)
 		add := func(response, synthetic float64) {
-			points = append(points, Point{
+			pt := Point{
 				Cost:       cost + u.ResponsePerMW*response + u.SyntheticPerMWs*synthetic,
 				OutputMW:   p,
 				InertiaMWs: u.InertiaMWs + synthetic,
 				ResponseMW: response,
-			})
+			}
+			points = append(points, pt)
+			if down > eps { // whatever else is held, as far as the foot-room goes
+				pt.Cost += u.DownPerMW * down
+				pt.DownMW = down
+				points = append(points, pt)
+			}
 		}
 		add(0, 0)
 		if most > eps {

@@ -31,6 +31,9 @@ func drawUnit(t *rapid.T) *fleet.Unit {
 	u.SyntheticCapMWs = sometimes("synthetic", 1, 400)
 	u.SyntheticPerMWs = f("per MWs", 0, 2)
 	u.HeadPerMWs = sometimes("head per MWs", 0.01, 0.3)
+	u.DownCapMW = sometimes("down cap", 1, 120)
+	u.DownPerMW = f("down per MW", 0, 20)
+	u.FootMW = u.MinMW - sometimes("below", 1, 50)
 	price, to := f("price", -20, 80), 0.0
 	for range rapid.IntRange(1, 4).Draw(t, "steps") {
 		to += f("step", 5, 90)
@@ -42,21 +45,23 @@ func drawUnit(t *rapid.T) *fleet.Unit {
 
 // dearest solves what Points is for with gonum's lp: the least of cost − λ·output −
 // μ·inertia − ρ·response over all that a unit can do when on. Variables: output above the
-// minimum, response, synthetic inertia, and the cost of output above its least.
-func dearest(t *rapid.T, u *fleet.Unit, lambda, mu, rho float64) float64 {
+// minimum, response, synthetic inertia, the cost of output above its least, response downwards.
+func dearest(t *rapid.T, u *fleet.Unit, lambda, mu, rho, delta float64) float64 {
 	var rows [][]float64
 	var rhs []float64
 	row := func(b float64, a ...float64) { rows, rhs = append(rows, a), append(rhs, b) }
-	row(u.MaxMW-u.MinMW, 1, 0, 0, 0)
-	row(u.ResponseCapMW, 0, 1, 0, 0)
-	row(u.SyntheticCapMWs, 0, 0, 1, 0)
+	row(u.MaxMW-u.MinMW, 1, 0, 0, 0, 0)
+	row(u.ResponseCapMW, 0, 1, 0, 0, 0)
+	row(u.SyntheticCapMWs, 0, 0, 1, 0, 0)
+	row(u.DownCapMW, 0, 0, 0, 0, 1)
+	row(u.MinMW-u.FootMW, -1, 0, 0, 0, 1)
 	head := 0.0
 	if u.FromHead {
 		head = 1
 	}
-	row(u.HeadMW-u.MinMW, 1, head, u.HeadPerMWs, 0)
+	row(u.HeadMW-u.MinMW, 1, head, u.HeadPerMWs, 0, 0)
 	if u.ShareOfOutput > 0 {
-		row(u.ShareOfOutput*u.MinMW, -u.ShareOfOutput, 1, 0, 0)
+		row(u.ShareOfOutput*u.MinMW, -u.ShareOfOutput, 1, 0, 0, 0)
 	}
 	// cost ≥ each line of the convex cost, from its least value.
 	lines := [][2]float64{} // cost = a + b·output
@@ -72,11 +77,11 @@ func dearest(t *rapid.T, u *fleet.Unit, lambda, mu, rho float64) float64 {
 	}
 	least = min(least, -30*math.Abs(u.MinMW)-1000-30*math.Abs(u.MaxMW))
 	for _, l := range lines {
-		row(least-l[0]-l[1]*u.MinMW, l[1], 0, 0, -1)
+		row(least-l[0]-l[1]*u.MinMW, l[1], 0, 0, -1, 0)
 	}
-	n, m := 4, len(rows)
+	n, m := 5, len(rows)
 	c := make([]float64, n+m)
-	c[0], c[1], c[2], c[3] = -lambda, u.ResponsePerMW-rho, u.SyntheticPerMWs-mu, 1
+	c[0], c[1], c[2], c[3], c[4] = -lambda, u.ResponsePerMW-rho, u.SyntheticPerMWs-mu, 1, u.DownPerMW-delta
 	a := mat.NewDense(m, n+m, nil)
 	for i, r := range rows {
 		sign := 1.0
@@ -107,11 +112,12 @@ func TestPointsAgainstGonum(t *testing.T) {
 			lambda := rapid.Float64Range(-50, 200).Draw(t, "λ")
 			mu := rapid.Float64Range(0, 3).Draw(t, "μ")
 			rho := rapid.Float64Range(-10, 60).Draw(t, "ρ")
+			delta := rapid.Float64Range(-10, 60).Draw(t, "δ")
 			got := math.Inf(1)
 			for _, p := range points {
-				got = min(got, p.Cost-lambda*p.OutputMW-mu*p.InertiaMWs-rho*p.ResponseMW)
+				got = min(got, p.Cost-lambda*p.OutputMW-mu*p.InertiaMWs-rho*p.ResponseMW-delta*p.DownMW)
 			}
-			want := dearest(t, u, lambda, mu, rho)
+			want := dearest(t, u, lambda, mu, rho, delta)
 			if math.Abs(got-want) > 1e-6*(1+math.Abs(want)) {
 				t.Errorf("points give %.9g, gonum %.9g, unit %+v", got, want, *u)
 			}
@@ -141,10 +147,11 @@ func TestPointsAreFeasible(t *testing.T) {
 			}
 			switch {
 			case p.OutputMW < u.MinMW-eps, p.OutputMW > min(u.MaxMW, max(capMW, u.MinMW))+eps, p.ResponseMW < -eps, p.ResponseMW > u.ResponseCapMW+eps,
+				p.DownMW < -eps, p.DownMW > u.DownCapMW+eps, p.DownMW > max(p.OutputMW-u.FootMW, 0)+eps,
 				synthetic < -eps, synthetic > u.SyntheticCapMWs+eps, used > u.HeadMW+eps, u.ShareOfOutput > 0 && p.ResponseMW > u.ShareOfOutput*p.OutputMW+eps:
 				t.Errorf("%+v of %+v", p, *u)
 			}
-			if want := u.OnCost + OutputCost(u.Steps, p.OutputMW) + u.ResponsePerMW*p.ResponseMW + u.SyntheticPerMWs*synthetic; math.Abs(p.Cost-want) > 1e-6*(1+math.Abs(want)) {
+			if want := u.OnCost + OutputCost(u.Steps, p.OutputMW) + u.ResponsePerMW*p.ResponseMW + u.SyntheticPerMWs*synthetic + u.DownPerMW*p.DownMW; math.Abs(p.Cost-want) > 1e-6*(1+math.Abs(want)) {
 				t.Errorf("%+v costs %g", p, want)
 			}
 		}
