@@ -21,6 +21,16 @@ type Problem struct {
 	Classes []Class
 	Losses  []Loss
 
+	// The other side of nominal: its limits (nil: none) and the losses of load and of
+	// exports, whose size is FixedMW less the output of what they take with them.
+	Above      *limits.Limits
+	OverLosses []Loss
+	// AboveDampingMWPerHz and AboveInertiaMWs are what is sure to be left of the load's damping
+	// and of its own kinetic energy after the largest of those losses; AboveA0 is as DampingA0.
+	AboveDampingMWPerHz float64
+	AboveInertiaMWs     float64
+	AboveA0             float64
+
 	// DampingA0 is a lower bound of D·f0/(2·E) over every mix that serves the load, 1/s.
 	DampingA0 float64
 	// MostInertiaMWs is the bound of E it comes from.
@@ -37,6 +47,7 @@ type Class struct {
 	Commit  bool
 	MustRun bool
 	Shape   int // −1: none
+	Down    int // shape of the response downwards; −1: none
 }
 
 // MostUnservedMW is the most that can be short of supply: the load, and what runs and draws
@@ -89,7 +100,11 @@ func Build(c *fleet.Case, h *fleet.Hour) *Problem {
 		if u.ResponseCapMW <= 0 {
 			shape = -1
 		}
-		p.Classes = append(p.Classes, Class{Unit: i, Count: u.Count, Commit: u.Commit, MustRun: u.MustRun, Shape: shape})
+		down := u.DownShape
+		if u.DownCapMW <= 0 {
+			down = -1
+		}
+		p.Classes = append(p.Classes, Class{Unit: i, Count: u.Count, Commit: u.Commit, MustRun: u.MustRun, Shape: shape, Down: down})
 	}
 	for _, l := range h.Losses {
 		var members []int
@@ -101,14 +116,40 @@ func Build(c *fleet.Case, h *fleet.Hour) *Problem {
 		if len(members) == 0 && l.FixedMW <= 0 {
 			continue
 		}
-		p.Losses = append(p.Losses, Loss{Name: l.Name, FixedMW: l.FixedMW, Classes: members, Single: l.Single})
+		loss := Loss{Name: l.Name, FixedMW: l.FixedMW, Classes: members, Single: l.Single}
+		if !l.Over {
+			p.Losses = append(p.Losses, loss)
+		} else if c.Above != nil {
+			p.OverLosses = append(p.OverLosses, loss)
+		}
 	}
 	p.MostInertiaMWs = mostInertia(h)
 	p.DampingA0 = h.DampingMWPerHz * c.Limits.NominalHz / (2 * p.MostInertiaMWs)
 	if p.MostInertiaMWs <= 0 {
 		p.DampingA0 = 0
 	}
+	if c.Above != nil {
+		p.above(c, h)
+	}
 	return p
+}
+
+// above prepares the other side of nominal: load that is lost damps no more.
+func (p *Problem) above(c *fleet.Case, h *fleet.Hour) {
+	p.Above = c.Above
+	most := 0.0
+	for k := range p.OverLosses {
+		most = max(most, p.OverLosses[k].FixedMW)
+	}
+	left := 1.0
+	if h.DemandMW > 0 {
+		left = max(0, 1-most/h.DemandMW)
+	}
+	p.AboveDampingMWPerHz = left * h.DampingMWPerHz
+	p.AboveInertiaMWs = left * h.LoadInertiaMWs
+	if p.MostInertiaMWs > 0 {
+		p.AboveA0 = p.AboveDampingMWPerHz * c.Limits.NominalHz / (2 * p.MostInertiaMWs)
+	}
 }
 
 // mostInertia bounds the kinetic energy that any mix can have online: what runs at its

@@ -8,7 +8,8 @@ import "evenkeel/limits"
 //
 // It is a limits.Row divided by its LossS.
 type Row struct {
-	Loss int // index into Problem.Losses; AnyLoss: a loss of at least MW
+	Loss int  // index into Problem.Losses (Over: OverLosses); AnyLoss: a loss of at least MW
+	Over bool // of the other side of nominal: Response is of the responses downwards
 	MW   float64
 	At   limits.Instant
 
@@ -40,14 +41,37 @@ func (p *Problem) Row(loss int, r limits.Row) Row {
 	if p.Hour.DemandMW > 0 {
 		row.DampingShare = row.DampingMW / p.Hour.DemandMW
 	}
+	row.perHz(p.Limits)
+	return row
+}
+
+// OverRow formulates an instant for a loss of load or export.
+func (p *Problem) OverRow(loss int, r limits.Row) Row {
+	inv := 1 / r.LossS
+	row := Row{
+		Loss: loss, Over: true, At: r.At,
+		InertiaPerMWs: r.InertiaPerMWs * inv,
+		Response:      make([]float64, len(r.Response)),
+		DampingMW:     r.DampingHz * p.AboveDampingMWPerHz * inv,
+	}
+	for s, v := range r.Response {
+		row.Response[s] = v * inv
+	}
+	if p.Hour.DemandMW > 0 {
+		row.DampingShare = row.DampingMW / p.Hour.DemandMW
+	}
+	row.perHz(*p.Above)
+	return row
+}
+
+func (r *Row) perHz(l limits.Limits) {
 	switch r.At.Kind {
 	case limits.RoCoF:
-		row.HzPerInertia = row.InertiaPerMWs / p.Limits.MaxHzPerS
+		r.HzPerInertia = r.InertiaPerMWs / l.MaxHzPerS
 	case limits.Nadir:
-		row.HzPerInertia = row.InertiaPerMWs / p.Limits.NadirHz
+		r.HzPerInertia = r.InertiaPerMWs / l.NadirHz
 	case limits.Steady:
-		row.HzPerInertia = row.InertiaPerMWs / p.Limits.SteadyHz
-		row.HzDamping = row.DampingMW / p.Limits.SteadyHz
+		r.HzPerInertia = r.InertiaPerMWs / l.SteadyHz
+		r.HzDamping = r.DampingMW / l.SteadyHz
 	}
-	return row
 }

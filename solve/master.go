@@ -20,7 +20,8 @@ type master struct {
 
 	unserved int
 	short    [limits.Kinds]int
-	shortMW  float64 // most that a limit can be short
+	shortMW  float64           // most that a limit can be short
+	over     [limits.Kinds]int // shortfalls above nominal, where there are limits there
 
 	base [][]int32             // columns without a cap, one list a group
 	caps map[float64][][]int32 // columns under a cap
@@ -34,6 +35,9 @@ func newMaster(p *formulate.Problem) *master {
 		u := &p.Hour.Units[cl.Unit]
 		points := formulate.Points(u, math.Inf(1))
 		g := &simplex.Group{Shape: cl.Shape}
+		if cl.Down >= 0 && p.Above != nil {
+			g.Down = m.downAt(cl.Down)
+		}
 		if cl.Commit || len(points) == 0 {
 			g.HasOff = true
 			g.Cols = append(g.Cols, simplex.Column{})
@@ -67,6 +71,17 @@ func newMaster(p *formulate.Problem) *master {
 		m.groups = append(m.groups, &simplex.Group{Shape: shapes + 1 + k, HasOff: true, Cols: []simplex.Column{
 			{}, {Cost: 2 * m.shortMW * p.ShortPerMW, R: 2 * m.shortMW}}})
 	}
+	if p.Above != nil {
+		for k := range p.OverLosses {
+			m.shortMW = max(m.shortMW, m.possibleOver(k))
+		}
+		for k := range m.over {
+			m.over[k] = len(m.sets)
+			m.sets = append(m.sets, len(m.groups))
+			m.groups = append(m.groups, &simplex.Group{Shape: m.downAt(shapes) + k, HasOff: true, Cols: []simplex.Column{
+				{}, {Cost: 2 * m.shortMW * p.ShortPerMW, R: 2 * m.shortMW}}})
+		}
+	}
 	for _, g := range m.groups {
 		list := make([]int32, len(g.Cols))
 		for j := range list {
@@ -78,11 +93,36 @@ func newMaster(p *formulate.Problem) *master {
 }
 
 func column(pt formulate.Point) simplex.Column {
-	return simplex.Column{Cost: pt.Cost, P: pt.OutputMW, E: pt.InertiaMWs, R: pt.ResponseMW}
+	return simplex.Column{Cost: pt.Cost, P: pt.OutputMW, E: pt.InertiaMWs, R: pt.ResponseMW, D: pt.DownMW}
 }
 
-// rowShapes is the length of a row's R: the shapes, unserved load, shortfalls.
-func (m *master) rowShapes() int { return len(m.p.Shapes) + 1 + limits.Kinds }
+// downAt is where a row keeps the coefficient of a response downwards: after those upwards, of
+// unserved load and of shortfalls.
+func (m *master) downAt(shape int) int { return len(m.p.Shapes) + 1 + limits.Kinds + shape }
+
+// possibleOver is the most that a loss of load or export can be.
+func (m *master) possibleOver(k int) float64 {
+	l := &m.p.OverLosses[k]
+	mw := l.FixedMW
+	for _, c := range l.Classes {
+		most := max(-m.p.Hour.Units[m.p.Classes[c].Unit].MinMW, 0)
+		if !l.Single {
+			most *= float64(m.p.Classes[c].Count)
+		}
+		mw += most
+	}
+	return mw
+}
+
+// rowShapes is the length of a row's R: the shapes, unserved load, shortfalls, and the same of
+// the other side of nominal.
+func (m *master) rowShapes() int {
+	n := len(m.p.Shapes) + 1 + limits.Kinds
+	if m.p.Above != nil {
+		n += len(m.p.Shapes) + limits.Kinds
+	}
+	return n
+}
 
 // possible is the most that a loss can be.
 func (m *master) possible(k int) float64 {
@@ -165,6 +205,9 @@ const roundingShare = 1e-8
 // identical units loses the average of the most units that may be on: n units on at
 // their average point are as good as any n, and the average over more units is less.
 func (m *master) row(r formulate.Row, average int, inertiaAtLeast float64) *simplex.Row {
+	if r.Over {
+		return m.overRow(r, average)
+	}
 	p := m.p
 	shapes := len(p.Shapes)
 	row := &simplex.Row{E: r.InertiaPerMWs, R: make([]float64, m.rowShapes()), Tag: &rowTag{row: r, average: average}}
@@ -186,6 +229,31 @@ func (m *master) row(r formulate.Row, average int, inertiaAtLeast float64) *simp
 		own := simplex.Own{Group: c, P: share, E: share * r.InertiaPerMWs}
 		if s := p.Classes[c].Shape; s >= 0 {
 			own.R = share * r.Response[s]
+		}
+		row.Own = append(row.Own, own)
+	}
+	return row
+}
+
+// overRow is row for the other side of nominal: what is lost is load, or output below zero.
+func (m *master) overRow(r formulate.Row, average int) *simplex.Row {
+	p := m.p
+	row := &simplex.Row{E: r.InertiaPerMWs, R: make([]float64, m.rowShapes()), Tag: &rowTag{row: r, average: average}}
+	for s, v := range r.Response {
+		row.R[m.downAt(s)] = v
+	}
+	row.R[len(p.Shapes)] = -r.DampingShare
+	row.R[m.downAt(len(p.Shapes))+int(r.At.Kind)] = 1
+	l := &p.OverLosses[r.Loss]
+	row.RHS = l.FixedMW + roundingShare*m.shortMW - r.InertiaPerMWs*p.AboveInertiaMWs - r.DampingMW
+	for _, c := range l.Classes {
+		share := 1.0
+		if l.Single {
+			share = 1 / float64(average)
+		}
+		own := simplex.Own{Group: c, P: -share, E: share * r.InertiaPerMWs}
+		if s := p.Classes[c].Down; s >= 0 {
+			own.D = share * r.Response[s]
 		}
 		row.Own = append(row.Own, own)
 	}

@@ -12,11 +12,12 @@ import (
 type separator struct {
 	m    *master
 	scan *limits.Scan
+	over *limits.Scan // above nominal; nil: no limits there
 	st   state
 
 	lost     []lost
 	response []float64
-	broken   [limits.Worsts][]violation
+	broken   [2 * limits.Worsts][]violation // those above nominal after those below
 
 	found map[foundKey]struct{} // every (loss, instant) a row was made for
 	order []foundKey
@@ -24,6 +25,7 @@ type separator struct {
 
 type foundKey struct {
 	loss int
+	over bool
 	at   limits.Instant
 }
 
@@ -35,12 +37,16 @@ type violation struct {
 
 func newSeparator(m *master) *separator {
 	p := m.p
-	return &separator{
+	s := &separator{
 		m:        m,
 		scan:     limits.NewScan(p.Limits, p.Shapes, p.DampingA0, p.Hour.DampingMWPerHz),
 		response: make([]float64, len(p.Shapes)),
 		found:    map[foundKey]struct{}{},
 	}
+	if p.Above != nil {
+		s.over = limits.NewScan(*p.Above, p.Shapes, p.AboveA0, p.AboveDampingMWPerHz)
+	}
+	return s
 }
 
 const (
@@ -89,12 +95,17 @@ func (s *separator) add(lp *simplex.LP, units []int, floorMW, floorInertia, tolM
 			if has(lp, v) {
 				continue
 			}
-			key := foundKey{v.lost.loss, v.at}
+			key := foundKey{v.lost.loss, v.lost.over, v.at}
 			if _, ok := s.found[key]; !ok {
 				s.found[key] = struct{}{}
 				s.order = append(s.order, key)
 			}
-			row := s.m.p.Row(v.lost.loss, s.scan.Row(v.at))
+			var row formulate.Row
+			if v.lost.over {
+				row = s.m.p.OverRow(v.lost.loss, s.over.Row(v.at))
+			} else {
+				row = s.m.p.Row(v.lost.loss, s.scan.Row(v.at))
+			}
 			if v.lost.loss == formulate.AnyLoss {
 				row.MW = v.lost.mw
 			}
@@ -111,7 +122,7 @@ func has(lp *simplex.LP, v violation) bool {
 	const sameS = 1e-9
 	for _, r := range lp.Rows() {
 		tag, ok := r.Tag.(*rowTag)
-		if !ok || tag.cap || tag.row.Loss != v.lost.loss || tag.average != v.lost.average {
+		if !ok || tag.cap || tag.row.Loss != v.lost.loss || tag.row.Over != v.lost.over || tag.average != v.lost.average {
 			continue
 		}
 		a, b := tag.row.At, v.at
@@ -126,19 +137,26 @@ func has(lp *simplex.LP, v violation) bool {
 // worst is the worst instants after a loss, in MW of the loss not covered once
 // shortfalls are counted in.
 func (s *separator) worst(st *state, v *lost, out *[limits.Worsts]limits.Worst) {
-	copy(s.response, st.response)
+	p := s.m.p
+	scan, held, short, inertia := s.scan, st.response, &st.short, st.inertia
+	steady, damping := p.Limits.SteadyHz, p.Hour.DampingMWPerHz
+	if v.over {
+		scan, held, short, inertia = s.over, st.down, &st.over, st.inertia-p.Hour.LoadInertiaMWs+p.AboveInertiaMWs
+		steady, damping = p.Above.SteadyHz, p.AboveDampingMWPerHz
+	}
+	copy(s.response, held)
 	for _, r := range v.response {
 		s.response[r.shape] -= r.mw
 	}
-	left := max(st.inertia-v.inertia, 0)
-	look := s.scan.Worst
-	if st.short[limits.Steady] > 0 { // nothing rests on a steady band that is not kept
-		look = s.scan.WorstAlone
+	left := max(inertia-v.inertia, 0)
+	look := scan.Worst
+	if short[limits.Steady] > 0 { // nothing rests on a steady band that is not kept
+		look = scan.WorstAlone
 	}
 	look(v.mw, left, s.response, out)
 	// A shortfall makes the loss smaller for its limit. The instant that is worst then is
 	// not the one that is worst for the whole loss.
-	for kind, short := range st.short {
+	for kind, short := range short {
 		if short <= 0 {
 			continue
 		}
@@ -150,18 +168,21 @@ func (s *separator) worst(st *state, v *lost, out *[limits.Worsts]limits.Worst) 
 			}
 		}
 	}
-	p := s.m.p
 	if p.Hour.DemandMW > 0 {
-		out[limits.WorstBalance].ExcessMW += p.Limits.SteadyHz * p.Hour.DampingMWPerHz * st.unserved / p.Hour.DemandMW
+		out[limits.WorstBalance].ExcessMW += steady * damping * st.unserved / p.Hour.DemandMW
 	}
 }
 
 func (s *separator) check(v lost, tolMW float64) {
 	var worst [limits.Worsts]limits.Worst
 	s.worst(&s.st, &v, &worst)
+	list := s.broken[:limits.Worsts]
+	if v.over {
+		list = s.broken[limits.Worsts:]
+	}
 	for k := range worst {
 		if worst[k].ExcessMW > tolMW {
-			s.broken[k] = append(s.broken[k], violation{v, worst[k].At, worst[k].ExcessMW})
+			list[k] = append(list[k], violation{v, worst[k].At, worst[k].ExcessMW})
 		}
 	}
 }

@@ -12,21 +12,25 @@ import (
 type state struct {
 	inertia  float64   // MW·s, the load's own included
 	response []float64 // MW, one a shape
+	down     []float64 // the same downwards
 	unserved float64
 	short    [limits.Kinds]float64
-	class    []part // all units of each class
+	over     [limits.Kinds]float64 // short above nominal
+	class    []part                // all units of each class
 }
 
 // part is what one class puts in.
-type part struct{ on, cost, mw, inertia, response float64 }
+type part struct{ on, cost, mw, inertia, response, down float64 }
 
 func (m *master) measure(lp *simplex.LP, st *state) {
 	if st.class == nil {
 		st.class = make([]part, len(m.p.Classes))
 		st.response = make([]float64, len(m.p.Shapes))
+		st.down = make([]float64, len(m.p.Shapes))
 	}
 	st.inertia = m.p.Hour.LoadInertiaMWs
 	clear(st.response)
+	clear(st.down)
 	for c := range m.p.Classes {
 		cl := &m.p.Classes[c]
 		g := m.groups[c]
@@ -41,6 +45,7 @@ func (m *master) measure(lp *simplex.LP, st *state) {
 				sum.mw += x * col.P
 				sum.inertia += x * col.E
 				sum.response += x * col.R
+				sum.down += x * col.D
 			})
 		}
 		st.class[c] = sum
@@ -48,17 +53,26 @@ func (m *master) measure(lp *simplex.LP, st *state) {
 		if cl.Shape >= 0 {
 			st.response[cl.Shape] += sum.response
 		}
+		if cl.Down >= 0 {
+			st.down[cl.Down] += sum.down
+		}
 	}
 	st.unserved = lp.Share(m.unserved, 1) * m.groups[m.sets[m.unserved]].Cols[1].P
 	for k, s := range m.short {
 		st.short[k] = lp.Share(s, 1) * m.groups[m.sets[s]].Cols[1].R
+	}
+	if m.p.Above != nil {
+		for k, s := range m.over {
+			st.over[k] = lp.Share(s, 1) * m.groups[m.sets[s]].Cols[1].R
+		}
 	}
 }
 
 // lost is one loss as it stands in a state.
 type lost struct {
 	loss     int
-	average  int // units that a single loss is averaged over
+	over     bool // of Problem.OverLosses
+	average  int  // units that a single loss is averaged over
 	mw       float64
 	inertia  float64
 	response []lostResponse
@@ -100,12 +114,18 @@ func (m *master) losses(st *state, units []int, out []lost) []lost {
 		}
 		out = append(out, v)
 	}
+	if m.p.Above != nil {
+		out = m.lostLoad(st, units, out)
+	}
 	// Dropping the dominated ones swaps, so the order is fixed first: largest first.
 	slices.SortFunc(out, func(a, b lost) int {
 		if a.mw != b.mw {
 			return cmp.Compare(b.mw, a.mw)
 		}
-		return a.loss - b.loss
+		if a.loss != b.loss {
+			return a.loss - b.loss
+		}
+		return cmp.Compare(sideOf(a), sideOf(b))
 	})
 	n := 0
 	for i := range out {
@@ -121,10 +141,48 @@ func (m *master) losses(st *state, units []int, out []lost) []lost {
 	return out[:n]
 }
 
+func sideOf(v lost) int {
+	if v.over {
+		return 1
+	}
+	return 0
+}
+
+// lostLoad adds the losses above nominal.
+func (m *master) lostLoad(st *state, units []int, out []lost) []lost {
+	for k := range m.p.OverLosses {
+		l := &m.p.OverLosses[k]
+		v := lost{loss: k, over: true, average: 1, mw: l.FixedMW}
+		if len(out) < cap(out) {
+			v.response = out[:len(out)+1][len(out)].response[:0]
+		}
+		for _, c := range l.Classes {
+			part := &st.class[c]
+			share := 1.0
+			if l.Single {
+				if units[c] == 0 {
+					continue
+				}
+				v.average = units[c]
+				share = 1 / float64(units[c])
+			}
+			v.mw -= share * part.mw
+			v.inertia += share * part.inertia
+			if s := m.p.Classes[c].Down; s >= 0 && part.down > 0 {
+				v.response = append(v.response, lostResponse{s, share * part.down})
+			}
+		}
+		if v.mw > 0 {
+			out = append(out, v)
+		}
+	}
+	return out
+}
+
 // atLeast tells whether v is at least as bad as w at every instant. A lost response that
 // would have drawn power later is only comparable with the same.
 func (v *lost) atLeast(w *lost, recovers []bool) bool {
-	if v.mw < w.mw || v.inertia < w.inertia {
+	if v.over != w.over || v.mw < w.mw || v.inertia < w.inertia {
 		return false
 	}
 	for _, b := range w.response {
