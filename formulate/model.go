@@ -44,12 +44,14 @@ type unitColumns struct {
 	on       int
 	segments []int
 	response int // −1: none
+	down     int // downwards; −1: none
 	inertia  int // synthetic; −1: none
 }
 
 // Model writes out the hour with the frequency rows of every loss at the given instants.
-// Rows of losses that a constant loss always covers are left out.
-func (p *Problem) Model(instants []limits.Instant) *Model {
+// Rows of losses that a constant loss always covers are left out. Those above nominal come at
+// the instants over and at the same grid.
+func (p *Problem) Model(instants, over []limits.Instant) *Model {
 	m := &Model{}
 	balance := m.row("balance", "=", p.Hour.DemandMW)
 	units := make([][]unitColumns, len(p.Classes))
@@ -126,7 +128,55 @@ func (p *Problem) Model(instants []limits.Instant) *Model {
 			}
 		}
 	}
+	if p.Above != nil {
+		m.above(p, units, unserved, append(over, p.Grid()...))
+	}
 	return m
+}
+
+// above adds the rows of every loss of load and export.
+func (m *Model) above(p *Problem, units [][]unitColumns, unserved int, instants []limits.Instant) {
+	var short [limits.Kinds]int
+	for k := range short {
+		short[k] = m.column("short_over_"+limits.Kind(k).String(), p.ShortPerMW, 0, math.Inf(1), false)
+	}
+	for t, at := range dedupe(instants) {
+		for k := range p.OverLosses {
+			l := &p.OverLosses[k]
+			row := p.OverRow(k, p.Above.Row(at, p.Shapes, p.AboveA0))
+			n := 1
+			if l.Single {
+				n = p.Classes[l.Classes[0]].Count
+			}
+			for i := range n {
+				r := m.row(fmt.Sprintf("over_%d_%d_%d", t, k, i), ">=", l.FixedMW-row.InertiaPerMWs*p.AboveInertiaMWs-row.DampingMW)
+				m.add(unserved, r, -row.DampingShare)
+				m.add(short[at.Kind], r, 1)
+				lost := func(c, j int) bool {
+					for _, x := range l.Classes {
+						if x == c && (!l.Single || j == i) {
+							return true
+						}
+					}
+					return false
+				}
+				for c := range units {
+					for j := range units[c] {
+						u := &units[c][j]
+						if lost(c, j) {
+							m.output(p, c, u, r, 1) // what it draws is the loss
+							continue
+						}
+						m.add(u.on, r, row.InertiaPerMWs*p.Hour.Units[p.Classes[c].Unit].InertiaMWs)
+						m.add(u.inertia, r, row.InertiaPerMWs)
+						if sh := p.Classes[c].Down; sh >= 0 {
+							m.add(u.down, r, row.Response[sh])
+						}
+					}
+				}
+			}
+		}
+	}
 }
 
 // mostWeight bounds what a loss can ask for in a row, in MW.
@@ -186,7 +236,7 @@ func (m *Model) unit(p *Problem, c, i, balance int) unitColumns {
 		lo, hi = 0, 0
 		top = u.MinMW
 	}
-	out := unitColumns{response: -1, inertia: -1}
+	out := unitColumns{response: -1, down: -1, inertia: -1}
 	out.on = m.column("on_"+tag, u.OnCost+OutputCost(u.Steps, u.MinMW), lo, hi, cl.Commit)
 	ends := []float64{u.MinMW, top}
 	for _, s := range append([]fleet.Step{{ToMW: 0}}, u.Steps...) {
@@ -211,6 +261,14 @@ func (m *Model) unit(p *Problem, c, i, balance int) unitColumns {
 			m.add(out.response, r, 1)
 			m.output(p, c, &out, r, -u.ShareOfOutput)
 		}
+	}
+	if cl.Down >= 0 {
+		out.down = m.column("down_"+tag, u.DownPerMW, 0, u.DownCapMW, false)
+		m.under(out.down, out.on, u.DownCapMW, "downcap_"+tag)
+		r := m.row("foot_"+tag, "<=", 0)
+		m.add(out.down, r, 1)
+		m.output(p, c, &out, r, -1)
+		m.add(out.on, r, u.FootMW)
 	}
 	if u.SyntheticCapMWs > 0 {
 		out.inertia = m.column("synthetic_"+tag, u.SyntheticPerMWs, 0, u.SyntheticCapMWs, false)

@@ -119,7 +119,7 @@ func (s *Solver) describe(q *search, st *state, excess float64) Hour {
 		u := &h.Units[cl.Unit]
 		part := &st.class[c]
 		d := &out.Dispatch[cl.Unit]
-		*d = Dispatch{On: q.commit[c], OutputMW: part.mw, ResponseMW: part.response, InertiaMWs: part.inertia, Cost: part.cost, CO2T: part.mw * u.CO2TPerMWh}
+		*d = Dispatch{On: q.commit[c], OutputMW: part.mw, ResponseMW: part.response, DownMW: part.down, InertiaMWs: part.inertia, Cost: part.cost, CO2T: part.mw * u.CO2TPerMWh}
 		if u.Renewable {
 			d.CurtailedMW = clip(float64(cl.Count)*u.MaxMW - part.mw)
 		}
@@ -133,6 +133,15 @@ func (s *Solver) describe(q *search, st *state, excess float64) Hour {
 	}
 	for k := range out.Limits {
 		out.Limits[k].ShortMW = clip(st.short[k])
+	}
+	if p.Above != nil {
+		out.Above = &Above{DownPerMW: make([]float64, len(p.Shapes))}
+		for k := range out.Above.Limits {
+			out.Above.Limits[k].ShortMW = clip(st.over[k])
+		}
+		for _, mw := range st.down {
+			out.Above.DownMW += mw
+		}
 	}
 	return out
 }
@@ -149,7 +158,6 @@ func clip(mw float64) float64 {
 // service is there.
 func (s *Solver) price(q *search, st *state, out *Hour) {
 	p := q.m.p
-	var tight [limits.Kinds]bool
 	served := 1.0 // share of the load, which damps
 	if p.Hour.DemandMW > 0 {
 		served = max(0, 1-st.unserved/p.Hour.DemandMW)
@@ -165,25 +173,39 @@ func (s *Solver) price(q *search, st *state, out *Hour) {
 		if tag.cap || y <= 1e-9 {
 			continue
 		}
-		out.Prices.LossPerMW += y
 		out.Prices.InertiaPerMWs += y * tag.row.InertiaPerMWs
-		for k, v := range tag.row.Response {
-			out.Prices.ResponsePerMW[k] += y * v
-		}
 		left := st.inertia
+		results, each := &out.Limits, out.Prices.ResponsePerMW
+		if tag.row.Over {
+			out.Above.LossPerMW += y
+			results, each = &out.Above.Limits, out.Above.DownPerMW
+			left += p.AboveInertiaMWs - p.Hour.LoadInertiaMWs
+		} else {
+			out.Prices.LossPerMW += y
+		}
+		for k, v := range tag.row.Response {
+			each[k] += y * v
+		}
 		for _, o := range r.Own {
 			if tag.row.InertiaPerMWs > 0 {
 				left -= o.E / tag.row.InertiaPerMWs * st.class[o.Group].inertia
 			}
 		}
-		l := &out.Limits[tag.row.At.Kind]
-		tight[tag.row.At.Kind] = true
+		l := &results[tag.row.At.Kind]
+		l.Binds = true
 		l.Price += y * (tag.row.HzPerInertia*left + tag.row.HzDamping*served)
 	}
-	for k := range out.Limits {
-		out.Limits[k].Binds = tight[k] && out.Limits[k].Price >= leastPrice
-		if !out.Limits[k].Binds {
-			out.Limits[k].Price = 0
+	settle(&out.Limits)
+	if out.Above != nil {
+		settle(&out.Above.Limits)
+	}
+}
+
+// settle drops prices that count for nothing.
+func settle(list *[limits.Kinds]LimitResult) {
+	for k := range list {
+		if l := &list[k]; l.Price < leastPrice {
+			l.Binds, l.Price = false, 0
 		}
 	}
 }
@@ -257,6 +279,9 @@ func (s *Solver) replay(sys *replay.System, q *search, st *state, out *Hour) {
 			why = append(why, fmt.Sprintf("%s %s in the replay, limit %.3g", name, beyond(limits.Kind(kind), worst[kind]), limit[kind]))
 		}
 	}
+	if out.Above != nil {
+		why = append(why, s.replayAbove(sys, q, st, out)...)
+	}
 	if out.UnservedMW > 0 {
 		why = append(why, fmt.Sprintf("%.1f MW of load not served", out.UnservedMW))
 	}
@@ -266,6 +291,70 @@ func (s *Solver) replay(sys *replay.System, q *search, st *state, out *Hour) {
 	if len(why) > 0 {
 		out.Status, out.Why = Short, strings.Join(why, "; ")
 	}
+}
+
+// replayAbove puts the mix through every loss of load and export: the same course as below
+// nominal, mirrored. It says what is wrong.
+func (s *Solver) replayAbove(sys *replay.System, q *search, st *state, out *Hour) (why []string) {
+	p := q.m.p
+	a := out.Above
+	limit := [limits.Kinds]float64{p.Above.MaxHzPerS, p.Above.NadirHz, p.Above.SteadyHz}
+	damping := p.AboveDampingMWPerHz
+	if p.Hour.DemandMW > 0 {
+		damping *= max(0, 1-out.UnservedMW/p.Hour.DemandMW)
+	}
+	var worst [limits.Kinds]float64
+	for k := range p.OverLosses {
+		l := &p.OverLosses[k]
+		mw, left, down := q.afterOver(st, l)
+		if mw <= 0 {
+			continue
+		}
+		o := sys.Run(replay.Event{LossMW: mw, InertiaMWs: left, DampingMWPerHz: damping, ResponseMW: down})
+		for kind, v := range [limits.Kinds]float64{o.RoCoFHzPerS, o.NadirHz, o.SteadyHz} {
+			if v > worst[kind] {
+				worst[kind] = v
+				a.Limits[kind].Loss = l.Name
+				if limits.Kind(kind) == limits.Nadir {
+					a.WorstLoss, a.WorstLossMW, a.PeakS = l.Name, mw, o.NadirS
+				}
+			}
+		}
+	}
+	a.RoCoFHzPerS, a.PeakHz, a.SteadyHz = worst[limits.RoCoF], worst[limits.Nadir], worst[limits.Steady]
+	for kind := range a.Limits {
+		l := &a.Limits[kind]
+		l.Margin = limit[kind] - worst[kind]
+		name := aboveWord(limits.Kind(kind))
+		switch {
+		case l.ShortMW > 0:
+			why = append(why, fmt.Sprintf("%s short by %.1f MW of the loss", name, l.ShortMW))
+		case !(l.Margin >= -replayTolHz):
+			why = append(why, fmt.Sprintf("%s %s in the replay, limit %.3g", name, beyond(limits.Kind(kind), worst[kind]), limit[kind]))
+		}
+	}
+	return why
+}
+
+func aboveWord(k limits.Kind) string {
+	return [...]string{"RoCoF upwards", "peak", "steady above"}[k]
+}
+
+// afterOver is after for a loss of load or export.
+func (s *search) afterOver(st *state, l *formulate.Loss) (mw, left float64, down []float64) {
+	p := s.m.p
+	mw, left = l.FixedMW, st.inertia-p.Hour.LoadInertiaMWs+p.AboveInertiaMWs
+	down = append([]float64(nil), st.down...)
+	for _, c := range l.Classes {
+		share := s.share(l, c)
+		part := &st.class[c]
+		mw -= share * part.mw
+		left -= share * part.inertia
+		if sh := p.Classes[c].Down; sh >= 0 {
+			down[sh] -= share * part.down
+		}
+	}
+	return mw, left, down
 }
 
 // collapseHz is a deviation far beyond any protection (common practice): what a replay shows

@@ -27,6 +27,12 @@ func TestHourHoldsInReplay(t *testing.T) {
 			short += out.Limits[k].ShortMW
 			cost += c.ShortPerMW * out.Limits[k].ShortMW
 		}
+		if out.Above != nil {
+			for k := range out.Above.Limits {
+				short += out.Above.Limits[k].ShortMW
+				cost += c.ShortPerMW * out.Above.Limits[k].ShortMW
+			}
+		}
 		for _, d := range out.Dispatch {
 			mw += d.OutputMW
 			cost += d.Cost

@@ -24,6 +24,7 @@ func (s *Solver) Model(ctx context.Context, h *fleet.Hour, w io.Writer) error {
 		"on_C_I: unit I of class C is on; mw_C_I_S: its output above the minimum, step S; response_C_I: MW held;",
 		"synthetic_C_I: MW.s of synthetic inertia; unserved, excess: MW off balance; short_LIMIT: MW of a loss not covered;",
 		"cover_T_LIMIT: MW of loss covered at instant T; loss_T_K_I: loss K (of unit I) at instant T.",
+		"down_C_I: MW held downwards; over_T_K_I: load loss K at instant T; short_over_LIMIT as above.",
 	}
 	for c := range p.Classes {
 		comments = append(comments, fmt.Sprintf("class %d: %s", c, s.c.Resources[p.Classes[c].Unit].Name))
@@ -31,11 +32,19 @@ func (s *Solver) Model(ctx context.Context, h *fleet.Hour, w io.Writer) error {
 	for k := range p.Losses {
 		comments = append(comments, fmt.Sprintf("loss %d: %s", k, p.Losses[k].Name))
 	}
-	var at []limits.Instant
-	for _, f := range q.sep.order {
-		at = append(at, f.at)
+	for k := range p.OverLosses {
+		comments = append(comments, fmt.Sprintf("load loss %d: %s", k, p.OverLosses[k].Name))
 	}
-	return p.Model(append(at, p.Grid()...)).WriteMPS(w, fmt.Sprintf("hour_%d", h.Index), comments)
+	var at []limits.Instant
+	var over []limits.Instant
+	for _, f := range q.sep.order {
+		if f.over {
+			over = append(over, f.at)
+		} else {
+			at = append(at, f.at)
+		}
+	}
+	return p.Model(append(at, p.Grid()...), over).WriteMPS(w, fmt.Sprintf("hour_%d", h.Index), comments)
 }
 
 // search solves an hour. The damping bound supposes that the load is served and the

@@ -42,6 +42,9 @@ func TestSecureMixesHold(t *testing.T) {
 		short := out.UnservedMW + out.ExcessMW
 		for k := range out.Limits {
 			short += out.Limits[k].ShortMW
+			if out.Above != nil {
+				short += out.Above.Limits[k].ShortMW
+			}
 		}
 		if short > 0 {
 			if out.Status != Short || out.Why == "" {
@@ -53,6 +56,14 @@ func TestSecureMixesHold(t *testing.T) {
 		for k, limit := range [limits.Kinds]float64{l.MaxHzPerS, l.NadirHz, l.SteadyHz} {
 			if got := [limits.Kinds]float64{out.RoCoFHzPerS, out.NadirHz, out.SteadyHz}[k]; got > limit+replayTolHz {
 				t.Errorf("%s: %g in the replay, limit %g", limits.Kind(k), got, limit)
+			}
+		}
+		if a := out.Above; a != nil {
+			l := c.Above
+			for k, limit := range [limits.Kinds]float64{l.MaxHzPerS, l.NadirHz, l.SteadyHz} {
+				if got := [limits.Kinds]float64{a.RoCoFHzPerS, a.PeakHz, a.SteadyHz}[k]; got > limit+replayTolHz {
+					t.Errorf("above nominal, %s: %g in the replay, limit %g", limits.Kind(k), got, limit)
+				}
 			}
 		}
 		if out.Status != Secure {
@@ -77,6 +88,9 @@ func TestOrderChangesNothing(t *testing.T) {
 		for i, u := range h.Units {
 			if u.Shape >= 0 {
 				u.Shape = shape[u.Shape]
+			}
+			if u.DownCapMW > 0 {
+				u.DownShape = shape[u.DownShape]
 			}
 			g.Units[place[i]], d.Resources[place[i]] = u, c.Resources[i]
 		}

@@ -90,6 +90,25 @@ func randomHour(rng *rand.Rand, machines int) (*fleet.Case, *fleet.Hour) {
 		h.Losses = append(h.Losses, fleet.HourLoss{Name: "line", Members: []int{0, 1}})
 	}
 	h.Losses = append(h.Losses, fleet.HourLoss{Name: "busbar", FixedMW: capacity * uniform(0, 0.05)})
+	if rng.IntN(2) == 0 { // the other side of nominal
+		above := c.Limits
+		above.MaxHzPerS, above.NadirHz, above.SteadyHz = uniform(0.4, 1), uniform(0.6, 1), 0.5
+		c.Above = &above
+		for i := range h.Units {
+			u := &h.Units[i]
+			if u.Shape < 0 || rng.IntN(3) == 0 {
+				continue
+			}
+			u.DownShape, u.DownCapMW, u.DownPerMW, u.FootMW = u.Shape, u.MaxMW*uniform(0, 0.3), uniform(0, 6), min(u.MinMW, 0)
+			if u.Commit {
+				u.FootMW = u.MinMW
+			} else if u.MaxMW == 0 { // a battery
+				u.FootMW, u.DownCapMW = -u.HeadMW, u.HeadMW
+			}
+		}
+		h.Losses = append(h.Losses, fleet.HourLoss{Name: "feeder", FixedMW: capacity * uniform(0, 0.06), Over: true},
+			fleet.HourLoss{Name: "export", Members: []int{len(h.Units) - 1}, Single: true, Over: true})
+	}
 	h.DemandMW = capacity * uniform(0.3, 0.8)
 	h.DampingMWPerHz = h.DemandMW * uniform(0, 0.02)
 	h.LoadInertiaMWs = h.DemandMW * uniform(0, 0.3)

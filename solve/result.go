@@ -52,6 +52,8 @@ type Hour struct {
 	Limits [limits.Kinds]LimitResult
 	Prices Prices
 
+	Above *Above // the other side of nominal; nil: the case has no limits there
+
 	Closed Closed
 
 	Dispatch []Dispatch // one a resource, same order as Case.Resources
@@ -68,6 +70,25 @@ type LimitResult struct {
 	Binds   bool    // relaxing the limit lowers the cost
 	Price   float64 // currency per hour for 1 Hz (RoCoF: 1 Hz/s) of relaxation
 	ShortMW float64 // MW of the loss that the limit does not cover
+}
+
+// Above is how an hour stands with losses of load and export, which raise frequency. All values
+// are counted upwards.
+type Above struct {
+	DownMW      float64 // response held downwards
+	WorstLoss   string  // the loss with the highest replayed peak
+	WorstLossMW float64
+	RoCoFHzPerS float64
+	PeakHz      float64
+	PeakS       float64
+	SteadyHz    float64
+	Limits      [limits.Kinds]LimitResult // Nadir stands for the peak
+
+	DownPerMW []float64 // price of 1 MW downwards, one a shape
+	LossPerMW float64   // what 1 MW less of the binding losses saves
+
+	// In closed loop, where simulated.
+	ClosedRoCoFHzPerS, ClosedPeakHz, ClosedSteadyHz float64
 }
 
 // Closed is what the closed-loop simulation of an hour's worst losses shows, and what it took
@@ -97,6 +118,7 @@ type Dispatch struct {
 	On          int // units on
 	OutputMW    float64
 	ResponseMW  float64
+	DownMW      float64 // response downwards
 	InertiaMWs  float64 // synthetic included
 	Cost        float64
 	CurtailedMW float64

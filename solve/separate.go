@@ -149,11 +149,9 @@ func (s *separator) worst(st *state, v *lost, out *[limits.Worsts]limits.Worst) 
 		s.response[r.shape] -= r.mw
 	}
 	left := max(inertia-v.inertia, 0)
-	look := scan.Worst
-	if short[limits.Steady] > 0 { // nothing rests on a steady band that is not kept
-		look = scan.WorstAlone
-	}
-	look(v.mw, left, s.response, out)
+	// Where the steady band is short, nothing is asked of the nadir within its time: rows there
+	// would not hold for mixes that keep it. The replay shows what such an hour reaches.
+	scan.Worst(v.mw, left, s.response, out)
 	// A shortfall makes the loss smaller for its limit. The instant that is worst then is
 	// not the one that is worst for the whole loss.
 	for kind, short := range short {
@@ -161,7 +159,7 @@ func (s *separator) worst(st *state, v *lost, out *[limits.Worsts]limits.Worst) 
 			continue
 		}
 		var less [limits.Worsts]limits.Worst
-		look(v.mw-short, left, s.response, &less)
+		scan.Worst(v.mw-short, left, s.response, &less)
 		for k := range out {
 			if int(out[k].At.Kind) == kind {
 				out[k] = less[k]
