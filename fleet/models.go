@@ -186,10 +186,17 @@ func (r *reader) qualify() {
 		rating, most, who := 0.0, 0.0, -1
 		for j := range r.c.Resources {
 			res := &r.c.Resources[j]
-			if res.Response.Shape != m.Shape {
+			mw := 0.0
+			if res.Response.Shape == m.Shape {
+				mw = res.Response.CapMW.most()
+			}
+			if res.Down.Shape == m.Shape {
+				mw = max(mw, res.Down.CapMW.most())
+			}
+			if res.Response.Shape != m.Shape && res.Down.Shape != m.Shape {
 				continue
 			}
-			base, mw := res.Base(), res.Response.CapMW.most()
+			base := res.Base()
 			if !(base > 0) {
 				r.inputs[j].section.fault("response", "a "+m.Model.Kind.String()+" model without a rating", "rating_mva (machines) or power_mw (converters), which its droop counts on")
 				continue

@@ -33,15 +33,21 @@ func (c *Case) Hour(h int, opt HourOptions) *Hour {
 			c.converter(u, r, h)
 		}
 		u.bound()
+		if c.Above != nil && r.Down.Shape >= 0 {
+			u.down(r, h)
+		}
 		if r.LostAsOne {
 			out.Losses = append(out.Losses, HourLoss{Name: r.Name, Members: []int{i}, Single: true})
+			if c.Above != nil && !r.Kind.Machine() && u.MinMW < 0 { // it can draw power: that lost raises frequency
+				out.Losses = append(out.Losses, HourLoss{Name: r.Name, Members: []int{i}, Single: true, Over: true})
+			}
 		}
 	}
 	for _, g := range c.Connections {
 		out.Losses = append(out.Losses, HourLoss{Name: g.Name, Members: g.Resources})
 	}
 	for _, l := range c.Losses {
-		out.Losses = append(out.Losses, HourLoss{Name: l.Name, FixedMW: l.MW.At(h), Members: l.Resources})
+		out.Losses = append(out.Losses, HourLoss{Name: l.Name, FixedMW: l.MW.At(h), Members: l.Resources, Over: l.Over})
 	}
 	return out
 }
@@ -140,6 +146,29 @@ func (u *Unit) response(r *Response, h int) {
 	u.ResponseCapMW = max(r.CapMW.At(h), 0)
 	u.ResponsePerMW = r.PricePerMW
 	u.ShareOfOutput = r.ShareOfOutput
+}
+
+// down is the response downwards: a machine down to its minimum, wind and sun to nothing, a
+// battery and demand to all of their power drawn, a link to the other end of its power.
+func (u *Unit) down(r *Resource, h int) {
+	u.DownShape, u.DownCapMW, u.DownPerMW = r.Down.Shape, max(r.Down.CapMW.At(h), 0), r.Down.PricePerMW
+	u.FootMW = u.MinMW
+	switch r.Kind {
+	case Wind, Solar:
+		u.FootMW = 0
+	case Battery:
+		u.FootMW = -r.PowerMW
+	case Demand:
+		u.FootMW = -u.DownCapMW
+		if r.PowerMW > 0 {
+			u.FootMW = -r.PowerMW
+		}
+	case Link:
+		if r.PowerMW > 0 {
+			u.FootMW = -r.PowerMW
+		}
+	}
+	u.DownCapMW = min(u.DownCapMW, max(u.MaxMW-u.FootMW, 0))
 }
 
 // bound cuts what can be held to what the headroom can ever give.

@@ -9,10 +9,11 @@ import (
 
 var (
 	machineKeys = []string{"name", "kind", "count", "rating_mva", "inertia_s", "min_output_mw", "max_output_mw", "on_cost_per_h", "start_cost",
-		"min_up_h", "min_down_h", "ramp_mw_per_h", "cost_steps", "cost_per_mwh", "co2_t_per_mwh", "availability", "must_run", "losses_mw", "response", "lost_as_one"}
+		"min_up_h", "min_down_h", "ramp_mw_per_h", "cost_steps", "cost_per_mwh", "co2_t_per_mwh", "availability", "must_run", "losses_mw", "response", "down", "lost_as_one"}
 	converterKeys = []string{"name", "kind", "count", "power_mw", "energy_mwh", "schedule_mw", "available_mw", "min_output_mw", "max_output_mw",
-		"cost_per_mwh", "co2_t_per_mwh", "response", "synthetic_inertia", "lost_as_one", "inertia_s"}
+		"cost_per_mwh", "co2_t_per_mwh", "response", "down", "synthetic_inertia", "lost_as_one", "inertia_s"}
 	responseKeys  = []string{"shape", "model", "cap_mw", "price_per_mw", "share_of_output"}
+	downKeys      = []string{"shape", "model", "cap_mw", "price_per_mw"}
 	syntheticKeys = []string{"cap_mws", "price_per_mws", "filter_s"}
 	stepKeys      = []string{"to_mw", "per_mwh"}
 )
@@ -66,7 +67,7 @@ func (r *reader) resources(s *section) {
 			res := Resource{
 				Name: r.claim(g, r.names, "resource, connection and loss"), Line: g.line,
 				Count: g.whole("count", unitCount, 1), LostAsOne: true,
-				Response: Response{Shape: -1},
+				Response: Response{Shape: -1}, Down: Response{Shape: -1},
 			}
 			kind, ok := g.kind(part.kinds)
 			if !ok {
@@ -84,6 +85,9 @@ func (r *reader) resources(s *section) {
 			res.LostAsOne = g.flag("lost_as_one", kind != Demand)
 			if p := g.part("response", responseKeys); p != nil {
 				r.response(p, &res, &in)
+			}
+			if p := g.part("down", downKeys); p != nil {
+				r.down(p, &res)
 			}
 			r.place(res, in)
 		}
@@ -340,11 +344,26 @@ func valuesOf(v Value) []float64 {
 	return []float64{v.Const}
 }
 
-func (r *reader) response(s *section, res *Resource, in *input) {
-	in.caps = s.value("cap_mw", notBelow0)
-	res.Response.CapMW = in.caps.Value
-	res.Response.PricePerMW = s.numberOr("price_per_mw", notBelow0, 0)
-	res.Response.ShareOfOutput = s.numberOr("share_of_output", share, 0)
+// down reads the response downwards, for losses of load.
+func (r *reader) down(s *section, res *Resource) {
+	if res.Kind == Condenser {
+		s.r.fault(s.line, s.path, "response of a condenser", "nothing: it has no prime mover to respond with")
+		return
+	}
+	res.Down.CapMW = s.value("cap_mw", notBelow0).Value
+	res.Down.PricePerMW = s.numberOr("price_per_mw", notBelow0, 0)
+	at, ok := r.delivery(s)
+	if !ok {
+		return
+	}
+	res.Down.Shape = at
+	if r.shapeInputs[at].made && r.c.Shapes[at].Shape.Recovery() {
+		s.fault("shape", "a shape that falls below zero", "one that stays at or above zero: downwards no rotor gives back")
+	}
+}
+
+// delivery finds the shape or model that a response names.
+func (r *reader) delivery(s *section) (int, bool) {
 	key := "shape"
 	if s.has("model") {
 		key = "model"
@@ -354,7 +373,7 @@ func (r *reader) response(s *section, res *Resource, in *input) {
 	}
 	name, ok := s.text(key)
 	if !ok {
-		return
+		return 0, false
 	}
 	at, known := r.shapeIndex[name]
 	if known && r.c.Shapes[at].Model != (key == "model") {
@@ -371,6 +390,18 @@ func (r *reader) response(s *section, res *Resource, in *input) {
 			want += " (" + near + "?)"
 		}
 		s.fault(key, "the unknown "+key+" "+quoted(name), want)
+		return 0, false
+	}
+	return at, true
+}
+
+func (r *reader) response(s *section, res *Resource, in *input) {
+	in.caps = s.value("cap_mw", notBelow0)
+	res.Response.CapMW = in.caps.Value
+	res.Response.PricePerMW = s.numberOr("price_per_mw", notBelow0, 0)
+	res.Response.ShareOfOutput = s.numberOr("share_of_output", share, 0)
+	at, ok := r.delivery(s)
+	if !ok {
 		return
 	}
 	res.Response.Shape = at
@@ -388,7 +419,7 @@ func (r *reader) response(s *section, res *Resource, in *input) {
 		}
 		switch {
 		case math.IsInf(hold, 1):
-			s.fault("shape", quoted(name)+", held for ever, for a battery", "a shape with hold_s, so that its energy can be counted")
+			s.fault("shape", quoted(r.c.Shapes[at].Name)+", held for ever, for a battery", "a shape with hold_s, so that its energy can be counted")
 		case hold > 0 && res.EnergyMWh*3600/hold < in.caps.most()-1e-9:
 			s.warn("cap_mw", num(in.caps.most()), fmt.Sprintf("at most %s: energy_mwh (%s) lasts no longer; the response is cut to that", num(res.EnergyMWh*3600/hold), num(res.EnergyMWh)))
 		}

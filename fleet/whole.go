@@ -13,7 +13,8 @@ import (
 
 var (
 	wholeKeys     = []string{"case", "note", "currency", "frequency", "prices", "load", "hours", "shapes", "models", "machines", "converters", "connections", "losses", "relays"}
-	frequencyKeys = []string{"nominal_hz", "rocof", "nadir", "steady"}
+	frequencyKeys = []string{"nominal_hz", "rocof", "nadir", "steady", "above"}
+	aboveKeys     = []string{"rocof_hz_per_s", "peak_hz", "steady_hz"}
 	rocofKeys     = []string{"max_hz_per_s", "window_s"}
 	nadirKeys     = []string{"max_deviation_hz"}
 	steadyKeys    = []string{"max_deviation_hz", "by_s", "until_s"}
@@ -21,7 +22,7 @@ var (
 	loadKeys      = []string{"demand_mw", "damping_pct_per_hz", "inertia_mws_per_mw"}
 	hourKeys      = []string{"start", "count"}
 	groupKeys     = []string{"name", "resources"}
-	lossKeys      = []string{"name", "mw", "resources"}
+	lossKeys      = []string{"name", "mw", "resources", "over"}
 )
 
 // whole reads all sections, in an order in which each finds what it refers to, then
@@ -91,6 +92,9 @@ func (r *reader) frequency(s *section) {
 	if nadir != nil && l.SteadyHz > l.NadirHz {
 		steady.fault("max_deviation_hz", num(l.SteadyHz), "at most nadir.max_deviation_hz ("+num(l.NadirHz)+")")
 	}
+	if a := s.part("above", aboveKeys); a != nil {
+		r.above(a)
+	}
 	if l.SteadyByS > l.SteadyUntilS {
 		steady.fault("until_s", num(l.SteadyUntilS), "at least by_s ("+num(l.SteadyByS)+")")
 	}
@@ -101,6 +105,16 @@ func (r *reader) frequency(s *section) {
 		rocof.warn("max_hz_per_s", fmt.Sprintf("%s over %s s, a drop of %s Hz", num(l.MaxHzPerS), num(l.WindowS), num(l.MaxHzPerS*l.WindowS)),
 			"a drop below nadir.max_deviation_hz ("+num(l.NadirHz)+"): else this limit never binds")
 	}
+}
+
+// above reads the limits above nominal, whose window and times are those below.
+func (r *reader) above(s *section) {
+	a := r.c.Limits
+	a.MaxHzPerS, a.NadirHz, a.SteadyHz = s.number("rocof_hz_per_s", positive), s.number("peak_hz", positive), s.number("steady_hz", positive)
+	if a.SteadyHz > a.NadirHz {
+		s.fault("steady_hz", num(a.SteadyHz), "at most peak_hz ("+num(a.NadirHz)+")")
+	}
+	r.c.Above = &a
 }
 
 // load reads the load, whose series sets the hours of the case; with a constant load the
@@ -205,7 +219,10 @@ func (r *reader) losses(s *section) {
 		if g == nil {
 			continue
 		}
-		l := Loss{Name: r.claim(g, r.names, "resource, connection and loss"), Resources: r.members(g)}
+		l := Loss{Name: r.claim(g, r.names, "resource, connection and loss"), Resources: r.members(g), Over: g.flag("over", false)}
+		if l.Over && r.c.Above == nil {
+			g.fault("over", "a loss of load", "limits above nominal (frequency.above) for it")
+		}
 		if g.has("resources") {
 			l.MW = g.valueOr("mw", notBelow0, 0).Value
 		} else {

@@ -59,6 +59,9 @@ func (s *Solver) proven(ctx context.Context, h *fleet.Hour, q *search, st *state
 			return out, nil
 		}
 		failed := s.simulate(sim, sys, q, st, &out)
+		if out.Above != nil {
+			failed = append(failed, s.simulateAbove(sim, q, st, &out)...)
+		}
 		out.Closed.Mended, out.Closed.MendedCost = mends, out.Cost-first
 		if len(failed) == 0 {
 			return out, nil
@@ -66,6 +69,9 @@ func (s *Solver) proven(ctx context.Context, h *fleet.Hour, q *search, st *state
 		if mends == mostMends {
 			out.Status = Short
 			out.Why = fmt.Sprintf("leaves the corridor in closed loop: RoCoF %.3f Hz/s, nadir %.3f Hz, steady %.3f Hz", out.Closed.RoCoFHzPerS, out.Closed.NadirHz, out.Closed.SteadyHz)
+			if a := out.Above; a != nil {
+				out.Why += fmt.Sprintf("; upwards %.3f Hz/s, peak %.3f Hz, steady %.3f Hz", a.ClosedRoCoFHzPerS, a.ClosedPeakHz, a.ClosedSteadyHz)
+			}
 			return out, nil
 		}
 		shapes = s.mend(sim, q, st, shapes, failed, mends)
@@ -91,6 +97,7 @@ func (s *Solver) proven(ctx context.Context, h *fleet.Hour, q *search, st *state
 type failure struct {
 	loss   dynamic.Loss
 	sys    *dynamic.System
+	over   bool // a loss of load
 	early  bool // RoCoF or nadir fails
 	steady bool
 	nadirS float64
@@ -183,6 +190,38 @@ func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search
 	return failed
 }
 
+// simulateAbove runs every loss of load and export. It gives those that fail.
+func (s *Solver) simulateAbove(sim *dynamic.Simulator, q *search, st *state, out *Hour) []failure {
+	p := q.m.p
+	on := NewOnline(s.c, p.Hour, out.Dispatch, st.unserved)
+	l, a := p.Above, out.Above
+	opt := s.closedOptions()
+	opt.SteadyHz = l.SteadyHz
+	var failed []failure
+	for k := range p.OverLosses {
+		loss := &p.OverLosses[k]
+		d := s.trip(on, p, loss)
+		d.MW -= 2 * loss.FixedMW // load: what is missing is its demand
+		if d.MW >= 0 {
+			continue
+		}
+		sys := on.Over(loss.FixedMW)
+		d.Promises = nil
+		o := sim.Run(&sys, []dynamic.Loss{d}, opt)
+		a.ClosedRoCoFHzPerS, a.ClosedPeakHz, a.ClosedSteadyHz = max(a.ClosedRoCoFHzPerS, o.RiseHzPerS), max(a.ClosedPeakHz, o.PeakHz), max(a.ClosedSteadyHz, o.SteadyOverHz)
+		f := failure{loss: d, sys: &sys, over: true, nadirS: o.PeakS, rocofS: o.RiseS,
+			early:  o.RiseHzPerS > l.MaxHzPerS+closedTolHz || o.PeakHz > l.NadirHz+closedTolHz,
+			steady: o.SteadyOverHz > l.SteadyHz+closedTolHz}
+		if f.early || f.steady {
+			failed = append(failed, f)
+		}
+		if len(failed) == mostRecorded {
+			break
+		}
+	}
+	return failed
+}
+
 // atRest is the MW that what a loss leaves delivers at the steady limit.
 func (s *Solver) atRest(sys *dynamic.System, d *dynamic.Loss) float64 {
 	l := s.c.Limits
@@ -254,7 +293,7 @@ func (s *Solver) mend(sim *dynamic.Simulator, q *search, st *state, shapes []lim
 	samples := make([][]float64, len(shapes))
 	changed := make([]bool, len(shapes))
 	for i, m := range s.models {
-		if m == nil || st.response[i] <= 1e-6 {
+		if m == nil || st.response[i] <= 1e-6 && st.down[i] <= 1e-6 {
 			continue
 		}
 		samples[i] = make([]float64, n)
@@ -281,10 +320,15 @@ func (s *Solver) mend(sim *dynamic.Simulator, q *search, st *state, shapes []lim
 			held := 0.0
 			delivered := make([]float64, len(o.Times))
 			for u := range f.sys.Units {
-				if v := &f.sys.Units[u]; v.Model == m {
-					held += (v.N - gone[u]) * v.UpMW
+				v := &f.sys.Units[u]
+				room, sign := v.UpMW, 1.0
+				if f.over {
+					room, sign = v.DownMW, -1
+				}
+				if v.Model == m && room > 0 {
+					held += (v.N - gone[u]) * room
 					for t := range delivered {
-						delivered[t] += o.MW[u][t]
+						delivered[t] += sign * o.MW[u][t]
 					}
 				}
 			}

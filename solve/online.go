@@ -14,16 +14,41 @@ type Online struct {
 
 	c *fleet.Case
 	d []Dispatch
+
+	loadInertia float64
 	// Places in Sys of each resource's response and synthetic inertia and of each shape's
 	// promise; −1: none.
-	unit, synth, promise []int
+	unit, down, synth, promise []int
+}
+
+// Over adds to a system the promised response downwards, which follows its shape from a loss of
+// load on; l is such a loss, of load of mw and of so many units of resources.
+func (o *Online) Over(mw float64) (sys dynamic.System) {
+	sys = o.Sys
+	sys.Promises = nil // what is promised upwards stays where it is
+	models := map[int]bool{}
+	for i := range o.c.Models {
+		models[o.c.Models[i].Shape] = true
+	}
+	for i := range o.c.Resources {
+		if s := o.c.Resources[i].Down.Shape; s >= 0 && !models[s] && o.d[i].DownMW > 0 {
+			sys.Promises = append(sys.Promises, dynamic.Promise{Name: o.c.Resources[i].Name, Shape: o.c.Shapes[s].Shape, MW: -o.d[i].DownMW})
+		}
+	}
+	// Load that is lost damps no more, and its motors turn no more.
+	if sys.LoadMW > 0 {
+		left := max(0, 1-mw/sys.LoadMW)
+		sys.InertiaMWs -= (1 - left) * o.loadInertia
+		sys.LoadMW *= left
+	}
+	return sys
 }
 
 // NewOnline describes the mix d of an hour. Response that a resource holds with a model acts by
 // it, within what it holds; any other follows its shape. Synthetic inertia with a filter acts
 // on the filtered rate of change within the power it has; any other is inertia.
 func NewOnline(c *fleet.Case, h *fleet.Hour, d []Dispatch, unservedMW float64) *Online {
-	o := &Online{c: c, d: d, Sys: dynamic.System{NominalHz: c.Limits.NominalHz, LoadMW: max(h.DemandMW-unservedMW, 0), InertiaMWs: h.LoadInertiaMWs}}
+	o := &Online{c: c, d: d, loadInertia: h.LoadInertiaMWs, Sys: dynamic.System{NominalHz: c.Limits.NominalHz, LoadMW: max(h.DemandMW-unservedMW, 0), InertiaMWs: h.LoadInertiaMWs}}
 	sys := &o.Sys
 	if h.DemandMW > 0 {
 		sys.DampingPctPerHz = 100 * h.DampingMWPerHz / h.DemandMW
@@ -36,20 +61,28 @@ func NewOnline(c *fleet.Case, h *fleet.Hour, d []Dispatch, unservedMW float64) *
 	for i := range o.promise {
 		o.promise[i] = -1
 	}
-	o.unit, o.synth = make([]int, len(c.Resources)), make([]int, len(c.Resources))
+	o.unit, o.down, o.synth = make([]int, len(c.Resources)), make([]int, len(c.Resources)), make([]int, len(c.Resources))
 	const leastMW = 1e-6
 	for i := range c.Resources {
 		res, part := &c.Resources[i], &d[i]
-		o.unit[i], o.synth[i] = -1, -1
+		o.unit[i], o.down[i], o.synth[i] = -1, -1, -1
 		n := float64(part.On)
 		if n == 0 {
 			continue
 		}
 		sys.InertiaMWs += part.InertiaMWs
+		if down := res.Down.Shape; part.DownMW > leastMW && down >= 0 && models[down] != nil {
+			o.down[i] = len(sys.Units)
+			sys.Units = append(sys.Units, dynamic.Unit{Name: res.Name + " (downwards)", Model: models[down], N: n, RatingMW: res.Base(), DownMW: part.DownMW / n})
+		}
 		if shape := h.Units[i].Shape; part.ResponseMW > leastMW && shape >= 0 {
 			if m := models[shape]; m != nil {
-				o.unit[i] = len(sys.Units)
-				sys.Units = append(sys.Units, dynamic.Unit{Name: res.Name, Model: m, N: n, RatingMW: res.Base(), UpMW: part.ResponseMW / n})
+				if d := o.down[i]; d >= 0 && models[res.Down.Shape] == m { // one governor for both directions
+					sys.Units[d].Name, sys.Units[d].UpMW = res.Name, part.ResponseMW/n
+				} else {
+					o.unit[i] = len(sys.Units)
+					sys.Units = append(sys.Units, dynamic.Unit{Name: res.Name, Model: m, N: n, RatingMW: res.Base(), UpMW: part.ResponseMW / n})
+				}
 			} else {
 				if o.promise[shape] < 0 {
 					o.promise[shape] = len(sys.Promises)
@@ -92,9 +125,12 @@ func (o *Online) Lose(l *dynamic.Loss, resource int, units float64) {
 	} else {
 		l.InertiaMWs += share * part.InertiaMWs
 	}
+	if u := o.down[resource]; u >= 0 {
+		l.Units = append(l.Units, dynamic.Gone{Index: u, Much: units})
+	}
 	if u := o.unit[resource]; u >= 0 {
 		l.Units = append(l.Units, dynamic.Gone{Index: u, Much: units})
-	} else if part.ResponseMW > 0 {
+	} else if d := o.down[resource]; part.ResponseMW > 0 && !(d >= 0 && o.Sys.Units[d].UpMW > 0) {
 		if shape := o.c.Resources[resource].Response.Shape; shape >= 0 && o.promise[shape] >= 0 {
 			l.Promises = append(l.Promises, dynamic.Gone{Index: o.promise[shape], Much: share * part.ResponseMW})
 		}
