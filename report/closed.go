@@ -21,6 +21,7 @@ type closedTally struct {
 	rocof   float64   // the largest simulated
 	nadir   float64
 	steady  float64
+	over    [limits.Kinds]float64 // the largest simulated above nominal
 }
 
 func tallyClosed(hours []solve.Hour) *closedTally {
@@ -41,6 +42,9 @@ func tallyClosed(hours []solve.Hour) *closedTally {
 			t.proven++
 		}
 		t.rocof, t.nadir, t.steady = max(t.rocof, c.RoCoFHzPerS), max(t.nadir, c.NadirHz), max(t.steady, c.SteadyHz)
+		if a := h.Above; a != nil {
+			t.over[0], t.over[1], t.over[2] = max(t.over[0], a.ClosedRoCoFHzPerS), max(t.over[1], a.ClosedPeakHz), max(t.over[2], a.ClosedSteadyHz)
+		}
 		if h.Limits[limits.Nadir].Binds || h.Limits[limits.Steady].Binds {
 			t.margins = append(t.margins, c.MarginHz)
 		}
@@ -119,6 +123,9 @@ func (p *page) closedLoop() {
 	t := tallyClosed(p.hours)
 	p.section("In closed loop (governors and converters acting on the frequency they measure)")
 	p.fact("  proven", fmt.Sprintf("%s; the worst losses reach %s Hz/s, %s Hz below nominal, %s Hz in the steady band", hoursOf(t.proven), fixed(t.rocof, 3), fixed(t.nadir, 3), fixed(t.steady, 3)))
+	if p.c.Above != nil {
+		p.fact("", fmt.Sprintf("losses of load %s Hz/s, %s Hz above nominal, %s Hz in the band", fixed(t.over[0], 3), fixed(t.over[1], 3), fixed(t.over[2], 3)))
+	}
 	if t.mended > 0 {
 		p.fact("  mended", fmt.Sprintf("%s in %s, at most %d in one; it cost %s", hoursOf(t.mended), strings.Replace(count(t.rounds)+" rounds", "1 rounds", "1 round", 1), t.most, p.money(t.cost)))
 	} else {

@@ -26,6 +26,7 @@ func hoursHeader(c *fleet.Case) []string {
 			k.String()+"_price_per_"+limitUnit[k], k.String()+"_loss", k.String()+"_short_mw")
 	}
 	h = append(h, closedHeader...)
+	h = append(h, aboveHeader(c)...)
 	h = append(h, "energy_price_per_mwh", "inertia_price_per_mws")
 	for _, s := range c.Shapes {
 		h = append(h, "response_price_per_mw:"+s.Name)
@@ -68,7 +69,7 @@ func hoursRow(row []string, c *fleet.Case, h *solve.Hour) []string {
 		}
 		row = append(row, fixed(l.Margin, decHz), binds, fixed(l.Price, decPrice), l.Loss, fixed(l.ShortMW, decMW))
 	}
-	row = closedRow(row, h)
+	row = aboveRow(closedRow(row, h), c, h)
 	row = append(row, fixed(h.Prices.EnergyPerMWh, decPrice), fixed(h.Prices.InertiaPerMWs, decInertia))
 	for s := range c.Shapes {
 		row = append(row, fixed(responsePrice(h, s), decPrice))

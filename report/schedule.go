@@ -11,7 +11,7 @@ import (
 )
 
 var scheduleHeader = []string{
-	"hour", "time", "resource", "kind", "on", "output_mw", "response_mw", "inertia_mws", "curtailed_mw", "cost", "co2_t",
+	"hour", "time", "resource", "kind", "on", "output_mw", "response_mw", "down_mw", "inertia_mws", "curtailed_mw", "cost", "co2_t",
 }
 
 // WriteSchedule writes schedule.csv: one row for each hour and each resource that does
@@ -36,7 +36,7 @@ func WriteSchedule(w io.Writer, c *fleet.Case, hours []solve.Hour) error {
 				continue
 			}
 			row = append(row[:0], index, at, res.Name, res.Kind.String(), strconv.Itoa(d.On),
-				fixed(d.OutputMW, decMW), fixed(d.ResponseMW, decMW), fixed(d.InertiaMWs, decMW),
+				fixed(d.OutputMW, decMW), fixed(d.ResponseMW, decMW), fixed(d.DownMW, decMW), fixed(d.InertiaMWs, decMW),
 				fixed(d.CurtailedMW, decMW), fixed(d.Cost, decMoney), fixed(d.CO2T, decMW))
 			if err := out.Write(row); err != nil {
 				return err
@@ -51,7 +51,7 @@ func idle(k fleet.Kind, d *solve.Dispatch) bool {
 	if k.Machine() && d.On > 0 {
 		return false
 	}
-	for _, v := range [...]float64{d.OutputMW, d.ResponseMW, d.InertiaMWs, d.CurtailedMW, d.CO2T} {
+	for _, v := range [...]float64{d.OutputMW, d.ResponseMW, d.DownMW, d.InertiaMWs, d.CurtailedMW, d.CO2T} {
 		if !printsZero(v, decMW) {
 			return false
 		}

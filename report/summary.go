@@ -60,6 +60,7 @@ type summaryJSON struct {
 	Prices       []priceJSON        `json:"prices"`
 	Inertia      inertiaJSON        `json:"inertia"`
 	Worst        worstJSON          `json:"worst_replayed"`
+	Above        *aboveJSON         `json:"above_nominal"`
 	Closed       *closedJSON        `json:"closed_loop"`
 	Frequency    []frequencyRunJSON `json:"machines_run_for_frequency"`
 	Short        []shortJSON        `json:"short_hours"`
@@ -230,6 +231,7 @@ func WriteSummary(w io.Writer, c *fleet.Case, hours, without []solve.Hour, o Opt
 			Nadir:  valueAtHour{hz(t.nadirHz), t.nadirAtHour},
 			Steady: valueAtHour{hz(t.steadyHz), t.steadyAt},
 		},
+		Above:     aboveOf(c, hours),
 		Closed:    closedOf(c, hours),
 		Frequency: []frequencyRunJSON{},
 		Short:     []shortJSON{},

@@ -171,25 +171,28 @@ func tallyHours(c *fleet.Case, hours []solve.Hour, askedGap float64) *tally {
 }
 
 func (t *tally) addLimits(h *solve.Hour) {
-	at := h.Time.UTC()
 	for k := range h.Limits {
-		l, into := &h.Limits[k], &t.binding[k]
-		into.margin.add(l.Margin, h.Index)
-		if !printsZero(l.ShortMW, decMW) {
-			into.short++
-		}
-		if !l.Binds {
-			continue
-		}
-		into.binding++
-		into.price.sum += l.Price
-		if into.price.hours == 0 || l.Price > into.price.max {
-			into.price.max = l.Price
-		}
-		into.price.hours++
-		into.byHour[at.Hour()]++
-		into.byMonth[at.Month()-1]++
+		addLimit(&t.binding[k], &h.Limits[k], h)
 	}
+}
+
+func addLimit(into *limitTally, l *solve.LimitResult, h *solve.Hour) {
+	at := h.Time.UTC()
+	into.margin.add(l.Margin, h.Index)
+	if !printsZero(l.ShortMW, decMW) {
+		into.short++
+	}
+	if !l.Binds {
+		return
+	}
+	into.binding++
+	into.price.sum += l.Price
+	if into.price.hours == 0 || l.Price > into.price.max {
+		into.price.max = l.Price
+	}
+	into.price.hours++
+	into.byHour[at.Hour()]++
+	into.byMonth[at.Month()-1]++
 }
 
 // pair gives, for each hour, the same hour of the run without limits, or nil.

@@ -30,6 +30,7 @@ func Summary(w io.Writer, c *fleet.Case, hours, without []solve.Hour, o Options)
 	if !o.WithoutLimits {
 		p.whatBinds()
 		p.worths()
+		p.above()
 	}
 	p.closedLoop()
 	p.inertia()

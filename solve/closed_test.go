@@ -74,11 +74,26 @@ func provenEverywhere(t *testing.T, c *fleet.Case, every int) (mended int) {
 				}
 				on.Lose(&d, m, units)
 			}
+			opt := dynamic.Options{WindowS: l.WindowS, SteadyByS: l.SteadyByS, UntilS: l.SteadyUntilS}
+			if loss.Over {
+				d.MW -= 2 * loss.FixedMW
+				d.Promises = nil
+				if d.MW >= 0 {
+					continue
+				}
+				all++
+				sys := on.Over(loss.FixedMW)
+				o, a := sim.Run(&sys, []dynamic.Loss{d}, opt), c.Above
+				if tol := 2 * closedTolHz; o.RiseHzPerS > a.MaxHzPerS+tol || o.PeakHz > a.NadirHz+tol || o.SteadyOverHz > a.SteadyHz+tol {
+					t.Errorf("hour %d, %s (%.1f MW): upwards RoCoF %.4f, peak %.4f, steady %.4f", i, loss.Name, d.MW, o.RiseHzPerS, o.PeakHz, o.SteadyOverHz)
+				}
+				continue
+			}
 			if d.MW <= 0 {
 				continue
 			}
 			all++
-			o := sim.Run(&on.Sys, []dynamic.Loss{d}, dynamic.Options{WindowS: l.WindowS, SteadyByS: l.SteadyByS, UntilS: l.SteadyUntilS})
+			o := sim.Run(&on.Sys, []dynamic.Loss{d}, opt)
 			const tol = 2 * closedTolHz // of the proof and of this
 			if o.RoCoFHzPerS > l.MaxHzPerS+tol || o.NadirHz > l.NadirHz+tol || o.SteadyHz > l.SteadyHz+tol {
 				t.Errorf("hour %d, %s (%.1f MW): RoCoF %.4f, nadir %.4f, steady %.4f", i, loss.Name, d.MW, o.RoCoFHzPerS, o.NadirHz, o.SteadyHz)

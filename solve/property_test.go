@@ -124,7 +124,7 @@ func TestHarderCostsNoLess(t *testing.T) {
 		c, h := drawHour(t, 14)
 		d, g := *c, *h
 		by := rapid.Float64Range(0.5, 1).Draw(t, "by")
-		switch rapid.SampledFrom([]string{"rocof", "nadir", "steady", "until", "loss", "response"}).Draw(t, "harder") {
+		switch rapid.SampledFrom([]string{"rocof", "nadir", "steady", "until", "loss", "response", "above", "feeder"}).Draw(t, "harder") {
 		case "rocof":
 			d.Limits.MaxHzPerS *= by
 		case "nadir":
@@ -135,7 +135,27 @@ func TestHarderCostsNoLess(t *testing.T) {
 			d.Limits.SteadyUntilS /= by
 		case "loss":
 			g.Losses = append([]fleet.HourLoss(nil), h.Losses...)
-			g.Losses[len(g.Losses)-1].FixedMW /= by
+			for i := range g.Losses {
+				if !g.Losses[i].Over {
+					g.Losses[i].FixedMW /= by
+				}
+			}
+		case "above":
+			if c.Above == nil {
+				return
+			}
+			a := *c.Above
+			a.NadirHz *= by
+			a.MaxHzPerS *= by
+			a.SteadyHz = min(a.SteadyHz, a.NadirHz)
+			d.Above = &a
+		case "feeder":
+			g.Losses = append([]fleet.HourLoss(nil), h.Losses...)
+			for i := range g.Losses {
+				if g.Losses[i].Over {
+					g.Losses[i].FixedMW /= by
+				}
+			}
 		case "response":
 			g.Units = append([]fleet.Unit(nil), h.Units...)
 			for i := range g.Units {

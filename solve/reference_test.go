@@ -241,3 +241,32 @@ func TestReferenceScarfConvexHullPrices(t *testing.T) {
 		near(t, fmt.Sprintf("price at %g", demand), q.lp.Duals()[0], want, 1e-6)
 	}
 }
+
+// The other side of nominal is the first one mirrored: the same kinetic energy for a load lost
+// as R1 and R5 ask for an infeed lost, and the same prices.
+func TestReferenceMirrored(t *testing.T) {
+	for _, x := range []struct{ nadir, rocof, response, ramp, delay float64 }{{20, 0.125, 5000, 30, 0}, {0.8, 20, 1500, 10, 0}, {1, 20, 1400, 8, 0.5}} {
+		l := wide()
+		l.NadirHz, l.MaxHzPerS = x.nadir, x.rocof
+		c, h := referenceHour(t, l, 1000, 0, reserve{x.response, x.delay, x.ramp})
+		below := solveExactly(t, c, h)
+		free := wide()
+		c.Limits, c.Above = free, &l
+		h.Losses = []fleet.HourLoss{{Name: "feeder", FixedMW: 1000, Over: true}}
+		u := &h.Units[2]
+		u.DownCapMW, u.DownPerMW, u.DownShape, u.FootMW = u.ResponseCapMW, u.ResponsePerMW, u.Shape, -u.HeadMW
+		u.ResponseCapMW = 0
+		above := solveExactly(t, c, h)
+		near(t, "kinetic energy", above.InertiaMWs, below.InertiaMWs, 1e-6*below.InertiaMWs)
+		near(t, "price of inertia", above.Prices.InertiaPerMWs, below.Prices.InertiaPerMWs, 1e-9)
+		near(t, "price of the loss", above.Above.LossPerMW, below.Prices.LossPerMW, 1e-6)
+		near(t, "peak", above.Above.PeakHz, below.NadirHz, 1e-6)
+		near(t, "instant of the peak", above.Above.PeakS, below.NadirS, 1e-3)
+		near(t, "RoCoF", above.Above.RoCoFHzPerS, below.RoCoFHzPerS, 1e-6)
+		near(t, "response", above.Above.DownMW, below.PrimaryMW, 1e-6)
+		near(t, "price of response", above.Above.DownPerMW[0], below.Prices.ResponsePerMW[0], 1e-6)
+		for k := range above.Above.Limits {
+			near(t, "price of the limit", above.Above.Limits[k].Price, below.Limits[k].Price, 1e-3)
+		}
+	}
+}

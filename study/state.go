@@ -58,7 +58,7 @@ func RunHour(c *fleet.Case, dir string, hour int) (*Mix, error) {
 		if !ok {
 			return fmt.Errorf("unknown resource %q", get("resource"))
 		}
-		m.Dispatch[i] = solve.Dispatch{On: int(number("on")), OutputMW: number("output_mw"), ResponseMW: number("response_mw"), InertiaMWs: number("inertia_mws"), Cost: number("cost")}
+		m.Dispatch[i] = solve.Dispatch{On: int(number("on")), OutputMW: number("output_mw"), ResponseMW: number("response_mw"), DownMW: number("down_mw"), InertiaMWs: number("inertia_mws"), Cost: number("cost")}
 		return nil
 	})
 	if err != nil {
@@ -137,6 +137,7 @@ type stateFile struct {
 		On         *int    `yaml:"on"`
 		OutputMW   float64 `yaml:"output_mw"`
 		ResponseMW float64 `yaml:"response_mw"`
+		DownMW     float64 `yaml:"down_mw"`
 		Synthetic  float64 `yaml:"synthetic_mws"`
 	} `yaml:"resources"`
 }
@@ -207,6 +208,9 @@ func StateFile(c *fleet.Case, path string) (m *Mix, warnings []string, err error
 		if r.ResponseMW < 0 {
 			fault("response_mw", fmt.Sprint(r.ResponseMW), "at least 0")
 		}
+		if r.DownMW < 0 || r.DownMW > 0 && res.Down.Shape < 0 {
+			fault("down_mw", fmt.Sprint(r.DownMW), "at least 0, and 0 without a response downwards in the case")
+		}
 		if r.ResponseMW > 0 && res.Response.Shape < 0 {
 			fault("response_mw", fmt.Sprint(r.ResponseMW), "0: it has no response in the case")
 			continue
@@ -221,7 +225,7 @@ func StateFile(c *fleet.Case, path string) (m *Mix, warnings []string, err error
 		if !res.Kind.Machine() {
 			inertia = r.Synthetic
 		}
-		m.Dispatch[at] = solve.Dispatch{On: on, OutputMW: r.OutputMW, ResponseMW: r.ResponseMW, InertiaMWs: inertia}
+		m.Dispatch[at] = solve.Dispatch{On: on, OutputMW: r.OutputMW, ResponseMW: r.ResponseMW, DownMW: r.DownMW, InertiaMWs: inertia}
 		sum += r.OutputMW
 	}
 	if len(faults) > 0 {
