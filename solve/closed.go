@@ -59,7 +59,7 @@ func (s *Solver) proven(ctx context.Context, h *fleet.Hour, q *search, st *state
 			return out, nil
 		}
 		failed := s.simulate(sim, sys, q, st, &out)
-		if out.Above != nil {
+		if out.Above != nil && len(failed) == 0 { // the other side once this one holds
 			failed = append(failed, s.simulateAbove(sim, q, st, &out)...)
 		}
 		out.Closed.Mended, out.Closed.MendedCost = mends, out.Cost-first
@@ -139,8 +139,7 @@ func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search
 		if mw <= 0 {
 			continue
 		}
-		e := replay.Event{LossMW: mw, InertiaMWs: left, DampingMWPerHz: damping, ResponseMW: response}
-		o := open.Run(e)
+		o := st.replayed[k]
 		c := candidate{loss: loss, severity: severity(o.RoCoFHzPerS, o.NadirHz, o.SteadyHz)}
 		if triggered {
 			for i, m := range s.models {
@@ -148,7 +147,7 @@ func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search
 					response[i] = 0
 				}
 			}
-			o = open.Run(e)
+			o = open.Run(replay.Event{LossMW: mw, InertiaMWs: left, DampingMWPerHz: damping, ResponseMW: response})
 			c.triggered = severity(o.RoCoFHzPerS, o.NadirHz, o.SteadyHz) > 1
 		}
 		c.trip = s.trip(on, p, loss)
@@ -270,6 +269,7 @@ func (s *Solver) closedOptions() dynamic.Options {
 const (
 	mendSampleS = 0.1
 	mendWithin  = 0.01
+	mendStep    = 0.01 // lower in each round than what was delivered, so that few rounds do
 )
 
 // mend lowers the shapes of the models to what was delivered in the failed simulations: up
@@ -345,7 +345,7 @@ func (s *Solver) mend(sim *dynamic.Simulator, q *search, st *state, shapes []lim
 				if at+1 < len(o.Times) && o.Times[at+1] > o.Times[at] {
 					share += (delivered[at+1] - delivered[at]) / held * (t - o.Times[at]) / (o.Times[at+1] - o.Times[at])
 				}
-				share *= 1 - 0.005*float64(mends+1) // so that every round changes something
+				share *= 1 - mendStep*float64(mends+1) // so that every round changes something
 				least := math.Inf(1)
 				if f.early {
 					if t <= f.nadirS {

@@ -249,6 +249,7 @@ func (s *Solver) replay(sys *replay.System, q *search, st *state, out *Hour) {
 		damping *= 1 - out.UnservedMW/p.Hour.DemandMW
 	}
 	var worst [limits.Kinds]float64
+	st.replayed = make([]replay.Outcome, len(p.Losses))
 	for k := range p.Losses {
 		l := &p.Losses[k]
 		mw, left, response := q.after(st, l)
@@ -256,6 +257,7 @@ func (s *Solver) replay(sys *replay.System, q *search, st *state, out *Hour) {
 			continue
 		}
 		o := sys.Run(replay.Event{LossMW: mw, InertiaMWs: left, DampingMWPerHz: damping, ResponseMW: response})
+		st.replayed[k] = o
 		for kind, v := range [limits.Kinds]float64{o.RoCoFHzPerS, o.NadirHz, o.SteadyHz} {
 			if v > worst[kind] {
 				worst[kind] = v

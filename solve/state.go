@@ -5,6 +5,7 @@ import (
 	"slices"
 
 	"evenkeel/limits"
+	"evenkeel/limits/replay"
 	"evenkeel/solve/simplex"
 )
 
@@ -17,6 +18,8 @@ type state struct {
 	short    [limits.Kinds]float64
 	over     [limits.Kinds]float64 // short above nominal
 	class    []part                // all units of each class
+
+	replayed []replay.Outcome // one a loss, once replayed
 }
 
 // part is what one class puts in.

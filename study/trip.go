@@ -79,10 +79,22 @@ func RunTrip(m *Mix, losses []LossAt, w WhatIf, l limits.Limits) (*Trip, error) 
 		last = max(last, a.AtS)
 		t.Losses = append(t.Losses, one)
 	}
+	net, load := 0.0, 0.0
+	for i := range t.Losses {
+		net += t.Losses[i].MW
+		load += max(-t.Losses[i].MW, 0)
+	}
+	if net < 0 { // frequency rises: what is promised downwards follows its shape
+		t.Sys = on.Over(min(load, on.Sys.LoadMW))
+		for i := range t.Losses {
+			t.Losses[i].Promises = nil
+		}
+	}
+	on.Sys = t.Sys
 	for i := range on.Sys.Units {
 		u := &on.Sys.Units[i]
 		t.Sources = append(t.Sources, u.Name)
-		t.Held = append(t.Held, u.N*u.UpMW)
+		t.Held = append(t.Held, u.N*max(u.UpMW, u.DownMW))
 	}
 	for i := range on.Sys.Promises {
 		p := &on.Sys.Promises[i]
@@ -143,6 +155,9 @@ func lossOf(m *Mix, on *solve.Online, d []solve.Dispatch, a LossAt, lost map[int
 	for _, x := range c.Losses {
 		if x.Name == a.Name {
 			l.MW = x.MW.At(m.Hour.Index)
+			if x.Over {
+				l.MW = -l.MW
+			}
 			for _, i := range x.Resources {
 				take(i, math.Inf(1))
 			}
