@@ -158,7 +158,11 @@ func (m *master) use(lp *simplex.LP, capMW float64) {
 		m.caps[capMW] = lists
 	}
 	for g := range m.groups {
-		lp.Use(g, lists[g])
+		if list := lists[g]; len(list) == len(m.groups[g].Cols) {
+			lp.Use(g, nil) // all of them: faster than by list
+		} else {
+			lp.Use(g, list)
+		}
 	}
 }
 

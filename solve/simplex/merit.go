@@ -25,7 +25,7 @@ func (lp *LP) Merit() {
 	}
 	for range 60 {
 		mid := lo + (hi-lo)/2
-		if hi-lo <= 1e-9*(1+math.Abs(lo)) || mid <= lo || mid >= hi {
+		if hi-lo <= 1e-4*(1+math.Abs(lo)) || mid <= lo || mid >= hi {
 			break
 		}
 		if lp.supply(mid) < row.RHS {
