@@ -2,6 +2,7 @@ package report
 
 import (
 	"image/color"
+	"math"
 	"slices"
 
 	"gonum.org/v1/plot"
@@ -59,6 +60,13 @@ func tripFigure(t *study.Trip) figure {
 	upper.Y.Label.Text = "frequency, Hz"
 	low := min(max(t.NadirHz, t.Limits.NadirHz)*1.08, 10)
 	upper.Y.Min, upper.Y.Max = f0-low, f0+max(t.PeakHz*1.1, 0.03)
+	above := t.Mix.Case.Above
+	if t.PeakHz < 0.05 {
+		above = nil // nothing to be held against it
+	}
+	if above != nil {
+		upper.Y.Max = f0 + max(t.PeakHz, above.NadirHz)*1.08
+	}
 	var course [][2]float64
 	for i, at := range t.Times {
 		if at <= span {
@@ -81,11 +89,24 @@ func tripFigure(t *study.Trip) figure {
 		return out
 	}
 	slope := [][2]float64{{from, f0}, {from + low/t.Limits.MaxHzPerS, f0 - low}}
+	if above != nil && len(t.Losses) > 0 && t.Losses[0].MW < 0 {
+		high := upper.Y.Max - f0
+		slope[1] = [2]float64{from + high/above.MaxHzPerS, f0 + high}
+	}
+	if above != nil {
+		peak, band := limitsAt(*above, from, span)
+		for _, line := range [][][2]float64{peak, band} {
+			for i := range line {
+				line[i][1] += f0
+			}
+		}
+		upper.Add(path{peak, dashed(0xD55E00)}, path{band, dashed(0x009E73)})
+	}
 	upper.Add(path{turn(nadir), dashed(0xD55E00)}, path{turn(steady), dashed(0x009E73)}, path{slope, dashed(0x999999)},
 		path{course, draw.LineStyle{Color: rgb(0x0072B2), Width: vg.Points(1.8)}})
 	key := []entry{
 		{name: "frequency", line: &draw.LineStyle{Color: rgb(0x0072B2), Width: vg.Points(1.8)}},
-		{name: "nadir limit", line: ptr(dashed(0xD55E00))}, {name: "steady limit", line: ptr(dashed(0x009E73))}, {name: "largest RoCoF", line: ptr(dashed(0x999999))},
+		{name: "limit at any time", line: ptr(dashed(0xD55E00))}, {name: "steady limit", line: ptr(dashed(0x009E73))}, {name: "largest RoCoF", line: ptr(dashed(0x999999))},
 	}
 
 	lower := newPlot()
@@ -98,12 +119,15 @@ func tripFigure(t *study.Trip) figure {
 		order[i] = i
 	}
 	slices.SortStableFunc(order, func(a, b int) int {
-		if d := t.EnergyMWs[b] - t.EnergyMWs[a]; d > 0 {
+		if d := math.Abs(t.EnergyMWs[b]) - math.Abs(t.EnergyMWs[a]); d > 0 {
 			return 1
 		} else if d < 0 {
 			return -1
 		}
 		return 0
+	})
+	order = slices.DeleteFunc(order, func(s int) bool { // who does nothing is not drawn
+		return !slices.ContainsFunc(t.MW[s], func(v float64) bool { return math.Abs(v) > 0.005 })
 	})
 	n := 0
 	for n < len(t.Times) && t.Times[n] <= span {
