@@ -16,7 +16,7 @@ import (
 
 const (
 	mostMends     = 8
-	mostRecorded  = 2    // failed losses that the rows are rebuilt from in one round
+	mostRecorded  = 1    // failed losses that the rows are rebuilt from in one round
 	closedTolHz   = 1e-3 // the simulation's own error, see dynamic
 	closedTolStep = 2e-5
 	closedStill   = 2e-5 // Hz/s: less than a millihertz until the slowest dashpot has settled
