@@ -83,12 +83,12 @@ func TripText(w io.Writer, t *study.Trip) error {
 	row("RoCoF "+window, fixed(t.RoCoFHzPerS, 3)+" Hz/s", plain(l.MaxHzPerS), t.RoCoFHzPerS <= l.MaxHzPerS+tol)
 	p.line("  %s %s", padRight("RoCoF at its steepest", 28), fixed(t.InstantHzPerS, 3)+" Hz/s")
 	row("nadir", fmt.Sprintf("%s Hz at %s s", fixed(f0-t.NadirHz, 3), fixed(t.NadirS, 2)), plain(f0-l.NadirHz), t.NadirHz <= l.NadirHz+tol)
-	row("steady, from "+plain(l.SteadyByS)+" s on", fixed(f0-t.SteadyHz, 3)+" Hz", plain(f0-l.SteadyHz), t.SteadyHz <= l.SteadyHz+tol)
+	row("steady, "+plain(l.SteadyByS)+" s after the last", fixed(f0-t.SteadyHz, 3)+" Hz", plain(f0-l.SteadyHz), t.SteadyHz <= l.SteadyHz+tol)
 	switch a := t.Mix.Case.Above; {
 	case a != nil && t.PeakHz > 0.01:
 		row("RoCoF upwards", fixed(t.RiseHzPerS, 3)+" Hz/s", plain(a.MaxHzPerS), t.RiseHzPerS <= a.MaxHzPerS+tol)
 		row("peak", fmt.Sprintf("%s Hz at %s s", fixed(f0+t.PeakHz, 3), fixed(t.PeakS, 2)), plain(f0+a.NadirHz), t.PeakHz <= a.NadirHz+tol)
-		row("steady above, from "+plain(l.SteadyByS)+" s on", fixed(f0+t.SteadyOverHz, 3)+" Hz", plain(f0+a.SteadyHz), t.SteadyOverHz <= a.SteadyHz+tol)
+		row("steady above, as long after", fixed(f0+t.SteadyOverHz, 3)+" Hz", plain(f0+a.SteadyHz), t.SteadyOverHz <= a.SteadyHz+tol)
 	case t.PeakHz > 0.01:
 		p.line("  %s %s Hz at %s s", padRight("highest", 28), fixed(f0+t.PeakHz, 3), fixed(t.PeakS, 2))
 	}

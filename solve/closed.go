@@ -25,6 +25,10 @@ const (
 	// far. In a slower fall triggered responses act later: a loss that needs them is simulated if
 	// it comes near to a limit at all. Droop delivers less of what it holds the less frequency
 	// falls, so a loss that takes nearly all of what it delivers at the steady limit is simulated.
+	// Where a response that is set off goes again within the time looked at, what it leaves can be
+	// worse than the loss: every loss that could set it off is simulated. One that droop alone would
+	// hold at less than a part of the level could not.
+	harmless      = 0.4
 	closedSlack   = 1.1
 	triggeredFrom = 0.75
 	staticFrom    = 0.6
@@ -155,13 +159,15 @@ func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search
 		list = append(list, c)
 	}
 	slices.SortStableFunc(list, func(a, b candidate) int { return cmp.Compare(b.severity, a.severity) })
+	level, stiffness := s.withdrawn(sys, damping)
 	ratio := 1.0 // the most that closed loop was worse than open loop
 	var failed []failure
 	for _, c := range list {
 		if len(failed) == mostRecorded {
 			break // they tell the others' story too: what they miss shows in the next round
 		}
-		near := c.severity*ratio*closedSlack > 1 || c.static > staticFrom || c.triggered && c.severity > triggeredFrom
+		near := c.severity*ratio*closedSlack > 1 || c.static > staticFrom || c.triggered && c.severity > triggeredFrom ||
+			level > 0 && c.trip.MW > harmless*level*stiffness
 		if !near && out.Closed.Simulated > 0 {
 			continue
 		}
@@ -200,15 +206,14 @@ func (s *Solver) simulateAbove(sim *dynamic.Simulator, q *search, st *state, out
 	for k := range p.OverLosses {
 		loss := &p.OverLosses[k]
 		d := s.trip(on, p, loss)
-		d.MW -= 2 * loss.FixedMW // load: what is missing is its demand
+		d.MW -= loss.FixedMW // it is load
+		on.LoseLoad(&d, loss.FixedMW)
 		if d.MW >= 0 {
 			continue
 		}
-		sys := on.Over(loss.FixedMW)
-		d.Promises = nil
-		o := sim.Run(&sys, []dynamic.Loss{d}, opt)
+		o := sim.Run(&on.Sys, []dynamic.Loss{d}, opt)
 		a.ClosedRoCoFHzPerS, a.ClosedPeakHz, a.ClosedSteadyHz = max(a.ClosedRoCoFHzPerS, o.RiseHzPerS), max(a.ClosedPeakHz, o.PeakHz), max(a.ClosedSteadyHz, o.SteadyOverHz)
-		f := failure{loss: d, sys: &sys, over: true, nadirS: o.PeakS, rocofS: o.RiseS,
+		f := failure{loss: d, sys: &on.Sys, over: true, nadirS: o.PeakS, rocofS: o.RiseS,
 			early:  o.RiseHzPerS > l.MaxHzPerS+closedTolHz || o.PeakHz > l.NadirHz+closedTolHz,
 			steady: o.SteadyOverHz > l.SteadyHz+closedTolHz}
 		if f.early || f.steady {
@@ -219,6 +224,28 @@ func (s *Solver) simulateAbove(sim *dynamic.Simulator, q *search, st *state, out
 		}
 	}
 	return failed
+}
+
+// withdrawn gives the least level of those triggered responses that go again before the end
+// of the steady band's time, 0 if there are none, and the MW that a Hz of deviation asks of droop
+// and damping.
+func (s *Solver) withdrawn(sys *dynamic.System, damping float64) (level, stiffness float64) {
+	stiffness = damping
+	for i := range sys.Units {
+		u := &sys.Units[i]
+		switch m := u.Model; m.Kind {
+		case dynamic.Step:
+			c := m.Course
+			if ends := c.DelayS + c.RampS + c.HoldS; c.HoldS > 0 && ends < s.c.Limits.SteadyUntilS && (level == 0 || m.LevelHz < level) {
+				level = m.LevelHz
+			}
+		case dynamic.Synthetic:
+		default:
+			const small = 0.05 // Hz beyond the deadband, where no unit is at its room
+			stiffness += u.N * u.AtRest(sys.NominalHz, m.DeadbandHz+small, 0, 0) / small
+		}
+	}
+	return level, stiffness
 }
 
 // atRest is the MW that what a loss leaves delivers at the steady limit.
@@ -242,6 +269,9 @@ func (s *Solver) atRest(sys *dynamic.System, d *dynamic.Loss) float64 {
 			if g.Index == i {
 				left -= g.Much
 			}
+		}
+		if left < 0 { // promised downwards
+			continue
 		}
 		mw += left * min(p.Shape.At(l.SteadyByS), p.Shape.Before(l.SteadyUntilS))
 	}

@@ -76,14 +76,13 @@ func provenEverywhere(t *testing.T, c *fleet.Case, every int) (mended int) {
 			}
 			opt := dynamic.Options{WindowS: l.WindowS, SteadyByS: l.SteadyByS, UntilS: l.SteadyUntilS}
 			if loss.Over {
-				d.MW -= 2 * loss.FixedMW
-				d.Promises = nil
+				d.MW -= loss.FixedMW
+				on.LoseLoad(&d, loss.FixedMW)
 				if d.MW >= 0 {
 					continue
 				}
 				all++
-				sys := on.Over(loss.FixedMW)
-				o, a := sim.Run(&sys, []dynamic.Loss{d}, opt), c.Above
+				o, a := sim.Run(&on.Sys, []dynamic.Loss{d}, opt), c.Above
 				if tol := 2 * closedTolHz; o.RiseHzPerS > a.MaxHzPerS+tol || o.PeakHz > a.NadirHz+tol || o.SteadyOverHz > a.SteadyHz+tol {
 					t.Errorf("hour %d, %s (%.1f MW): upwards RoCoF %.4f, peak %.4f, steady %.4f", i, loss.Name, d.MW, o.RiseHzPerS, o.PeakHz, o.SteadyOverHz)
 				}

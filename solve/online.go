@@ -18,30 +18,18 @@ type Online struct {
 	loadInertia float64
 	// Places in Sys of each resource's response and synthetic inertia and of each shape's
 	// promise; −1: none.
-	unit, down, synth, promise []int
+	unit, down, synth, promise, promiseDown []int
 }
 
-// Over adds to a system the promised response downwards, which follows its shape from a loss of
-// load on; l is such a loss, of load of mw and of so many units of resources.
-func (o *Online) Over(mw float64) (sys dynamic.System) {
-	sys = o.Sys
-	sys.Promises = nil // what is promised upwards stays where it is
-	models := map[int]bool{}
-	for i := range o.c.Models {
-		models[o.c.Models[i].Shape] = true
+// LoseLoad adds the loss of load to l: what it drew, its share of the load's damping and of the
+// load's own kinetic energy.
+func (o *Online) LoseLoad(l *dynamic.Loss, mw float64) {
+	l.MW -= mw
+	if o.Sys.LoadMW > 0 {
+		gone := min(mw, o.Sys.LoadMW)
+		l.LoadMW += gone
+		l.InertiaMWs += gone / o.Sys.LoadMW * o.loadInertia
 	}
-	for i := range o.c.Resources {
-		if s := o.c.Resources[i].Down.Shape; s >= 0 && !models[s] && o.d[i].DownMW > 0 {
-			sys.Promises = append(sys.Promises, dynamic.Promise{Name: o.c.Resources[i].Name, Shape: o.c.Shapes[s].Shape, MW: -o.d[i].DownMW})
-		}
-	}
-	// Load that is lost damps no more, and its motors turn no more.
-	if sys.LoadMW > 0 {
-		left := max(0, 1-mw/sys.LoadMW)
-		sys.InertiaMWs -= (1 - left) * o.loadInertia
-		sys.LoadMW *= left
-	}
-	return sys
 }
 
 // NewOnline describes the mix d of an hour. Response that a resource holds with a model acts by
@@ -57,9 +45,9 @@ func NewOnline(c *fleet.Case, h *fleet.Hour, d []Dispatch, unservedMW float64) *
 	for i := range c.Models {
 		models[c.Models[i].Shape] = c.Models[i].Model
 	}
-	o.promise = make([]int, len(c.Shapes))
+	o.promise, o.promiseDown = make([]int, len(c.Shapes)), make([]int, len(c.Shapes))
 	for i := range o.promise {
-		o.promise[i] = -1
+		o.promise[i], o.promiseDown[i] = -1, -1
 	}
 	o.unit, o.down, o.synth = make([]int, len(c.Resources)), make([]int, len(c.Resources)), make([]int, len(c.Resources))
 	const leastMW = 1e-6
@@ -71,9 +59,13 @@ func NewOnline(c *fleet.Case, h *fleet.Hour, d []Dispatch, unservedMW float64) *
 			continue
 		}
 		sys.InertiaMWs += part.InertiaMWs
-		if down := res.Down.Shape; part.DownMW > leastMW && down >= 0 && models[down] != nil {
-			o.down[i] = len(sys.Units)
-			sys.Units = append(sys.Units, dynamic.Unit{Name: res.Name + " (downwards)", Model: models[down], N: n, RatingMW: res.Base(), DownMW: part.DownMW / n})
+		if down := res.Down.Shape; part.DownMW > leastMW && down >= 0 {
+			if models[down] != nil {
+				o.down[i] = len(sys.Units)
+				sys.Units = append(sys.Units, dynamic.Unit{Name: res.Name + " (downwards)", Model: models[down], N: n, RatingMW: res.Base(), DownMW: part.DownMW / n})
+			} else {
+				o.promised(o.promiseDown, down, -part.DownMW, " (downwards)")
+			}
 		}
 		if shape := h.Units[i].Shape; part.ResponseMW > leastMW && shape >= 0 {
 			if m := models[shape]; m != nil {
@@ -84,11 +76,7 @@ func NewOnline(c *fleet.Case, h *fleet.Hour, d []Dispatch, unservedMW float64) *
 					sys.Units = append(sys.Units, dynamic.Unit{Name: res.Name, Model: m, N: n, RatingMW: res.Base(), UpMW: part.ResponseMW / n})
 				}
 			} else {
-				if o.promise[shape] < 0 {
-					o.promise[shape] = len(sys.Promises)
-					sys.Promises = append(sys.Promises, dynamic.Promise{Name: c.Shapes[shape].Name, Shape: c.Shapes[shape].Shape})
-				}
-				sys.Promises[o.promise[shape]].MW += part.ResponseMW
+				o.promised(o.promise, shape, part.ResponseMW, "")
 			}
 		}
 		if res.SyntheticS > 0 && part.InertiaMWs > leastMW {
@@ -110,6 +98,16 @@ func NewOnline(c *fleet.Case, h *fleet.Hour, d []Dispatch, unservedMW float64) *
 	return o
 }
 
+// promised adds to what is promised with a shape.
+func (o *Online) promised(place []int, shape int, mw float64, what string) {
+	sys := &o.Sys
+	if place[shape] < 0 {
+		place[shape] = len(sys.Promises)
+		sys.Promises = append(sys.Promises, dynamic.Promise{Name: o.c.Shapes[shape].Name + what, Shape: o.c.Shapes[shape].Shape})
+	}
+	sys.Promises[place[shape]].MW += mw
+}
+
 // Lose is the loss of so many units of a resource: their output, their inertia and their
 // response. It adds to what l holds already.
 func (o *Online) Lose(l *dynamic.Loss, resource int, units float64) {
@@ -127,6 +125,8 @@ func (o *Online) Lose(l *dynamic.Loss, resource int, units float64) {
 	}
 	if u := o.down[resource]; u >= 0 {
 		l.Units = append(l.Units, dynamic.Gone{Index: u, Much: units})
+	} else if shape := o.c.Resources[resource].Down.Shape; part.DownMW > 0 && shape >= 0 && o.promiseDown[shape] >= 0 {
+		l.Promises = append(l.Promises, dynamic.Gone{Index: o.promiseDown[shape], Much: share * part.DownMW})
 	}
 	if u := o.unit[resource]; u >= 0 {
 		l.Units = append(l.Units, dynamic.Gone{Index: u, Much: units})

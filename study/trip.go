@@ -79,18 +79,6 @@ func RunTrip(m *Mix, losses []LossAt, w WhatIf, l limits.Limits) (*Trip, error) 
 		last = max(last, a.AtS)
 		t.Losses = append(t.Losses, one)
 	}
-	net, load := 0.0, 0.0
-	for i := range t.Losses {
-		net += t.Losses[i].MW
-		load += max(-t.Losses[i].MW, 0)
-	}
-	if net < 0 { // frequency rises: what is promised downwards follows its shape
-		t.Sys = on.Over(min(load, on.Sys.LoadMW))
-		for i := range t.Losses {
-			t.Losses[i].Promises = nil
-		}
-	}
-	on.Sys = t.Sys
 	for i := range on.Sys.Units {
 		u := &on.Sys.Units[i]
 		t.Sources = append(t.Sources, u.Name)
@@ -102,8 +90,12 @@ func RunTrip(m *Mix, losses []LossAt, w WhatIf, l limits.Limits) (*Trip, error) 
 		t.Held = append(t.Held, p.MW)
 	}
 	var sim dynamic.Simulator
-	until := min(l.SteadyUntilS, max(2*l.SteadyByS, 60))
-	t.Outcome = *sim.Run(&on.Sys, t.Losses, dynamic.Options{WindowS: l.WindowS, SteadyByS: l.SteadyByS, UntilS: until, Record: true})
+	// The steady band counts from the last loss on.
+	first := last
+	for _, a := range losses {
+		first = min(first, a.AtS)
+	}
+	t.Outcome = *sim.Run(&on.Sys, t.Losses, dynamic.Options{WindowS: l.WindowS, SteadyByS: last - first + l.SteadyByS, UntilS: last - first + l.SteadyUntilS, Record: true})
 	return t, nil
 }
 
@@ -114,6 +106,10 @@ func silence(c *fleet.Case, d []solve.Dispatch, name string) error {
 		r := &c.Resources[i]
 		if r.Name == name || r.Response.Shape >= 0 && c.Shapes[r.Response.Shape].Name == name {
 			d[i].ResponseMW = 0
+			found = true
+		}
+		if r.Name == name || r.Down.Shape >= 0 && c.Shapes[r.Down.Shape].Name == name {
+			d[i].DownMW = 0
 			found = true
 		}
 	}
@@ -154,9 +150,10 @@ func lossOf(m *Mix, on *solve.Online, d []solve.Dispatch, a LossAt, lost map[int
 	}
 	for _, x := range c.Losses {
 		if x.Name == a.Name {
-			l.MW = x.MW.At(m.Hour.Index)
-			if x.Over {
-				l.MW = -l.MW
+			if mw := x.MW.At(m.Hour.Index); x.Over {
+				on.LoseLoad(&l, mw)
+			} else {
+				l.MW = mw
 			}
 			for _, i := range x.Resources {
 				take(i, math.Inf(1))
@@ -165,7 +162,11 @@ func lossOf(m *Mix, on *solve.Online, d []solve.Dispatch, a LossAt, lost map[int
 		}
 	}
 	if mw, err := strconv.ParseFloat(a.Name, 64); err == nil && !math.IsNaN(mw) && !math.IsInf(mw, 0) {
-		l.Name, l.MW = fmt.Sprintf("%g MW", mw), mw
+		if l.Name = fmt.Sprintf("%g MW", mw); mw < 0 {
+			on.LoseLoad(&l, -mw)
+		} else {
+			l.MW = mw
+		}
 		return l, nil
 	}
 	return l, fmt.Errorf("--lose %q: want the name of a resource, a connection or a loss of the case, or MW", a.Name)

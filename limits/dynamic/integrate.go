@@ -12,7 +12,7 @@ import (
 func (s *Simulator) line(to float64) {
 	a, b := 0.0, 0.0
 	for i := range s.promised {
-		if p := &s.promised[i]; p.mw != 0 && s.next > 0 {
+		if p := &s.promised[i]; p.mw != 0 && s.t >= p.from {
 			a += p.mw * after(p.shape, s.t-p.from)
 			b += p.mw * before(p.shape, to-p.from)
 		}
@@ -90,6 +90,9 @@ func (s *Simulator) segment() (still bool) {
 	s.line(to)
 	s.derive(s.t, s.y, s.k1)
 	s.mark()
+	if s.watch() { // a rate can be passed at once
+		return false
+	}
 	h := firstStepS
 	for s.t < to {
 		h = min(h, s.maxDelayS, to-s.t)

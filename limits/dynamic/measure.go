@@ -55,10 +55,10 @@ func share(shape limits.Shape, t float64, early bool) float64 {
 }
 
 func (s *Simulator) promisedMW(i int, t float64, before bool) float64 {
-	if s.next == 0 {
+	p := &s.promised[i]
+	if t < p.from || before && t <= p.from {
 		return 0
 	}
-	p := &s.promised[i]
 	return p.mw * share(p.shape, t-p.from, before)
 }
 

@@ -175,12 +175,18 @@ func (s *Simulator) start(sys *System, losses []Loss, o Options) {
 	for _, r := range sys.Relays {
 		s.relay = append(s.relay, relay{Relay: r})
 		if r.HzPerS > 0 && r.WindowS > 0 {
-			s.rateStepS, s.rateFrom = min(s.rateStepS, r.WindowS/4), min(s.rateFrom, r.HzPerS/3)
+			s.rateStepS, s.rateFrom = min(s.rateStepS, r.WindowS/20), min(s.rateFrom, r.HzPerS/3)
 		}
 	}
 	s.promised = s.promised[:0]
 	for _, p := range sys.Promises {
-		s.promised = append(s.promised, promised{p.Shape, p.MW, s.first})
+		from := math.Inf(1)
+		for _, l := range s.losses {
+			if l.MW*p.MW > 0 {
+				from = min(from, l.AtS)
+			}
+		}
+		s.promised = append(s.promised, promised{p.Shape, p.MW, from})
 	}
 	s.events = append(s.events[:0], s.horizon)
 	for _, at := range []float64{s.first + o.SteadyByS, s.first + o.UntilS} {
@@ -188,9 +194,9 @@ func (s *Simulator) start(sys *System, losses []Loss, o Options) {
 			s.events = append(s.events, at)
 		}
 	}
-	for _, p := range sys.Promises {
-		if p.MW != 0 {
-			s.knots(p.Shape, s.first)
+	for _, p := range s.promised {
+		if p.mw != 0 && p.from < s.horizon {
+			s.knots(p.shape, p.from)
 		}
 	}
 	s.t, s.lost, s.inertia, s.load = 0, 0, sys.InertiaMWs, sys.LoadMW
@@ -305,6 +311,7 @@ func (s *Simulator) happen() {
 
 func (s *Simulator) lose(l *Loss) {
 	s.lost += l.MW
+	s.load = max(s.load-l.LoadMW, 0)
 	s.inertia -= l.InertiaMWs
 	for _, g := range l.Units {
 		at := s.home[g.Index]
@@ -320,8 +327,9 @@ func (s *Simulator) lose(l *Loss) {
 		p.n = left
 		lump.total()
 	}
-	for _, g := range l.Promises {
-		s.promised[g.Index].mw -= g.Much
+	for _, g := range l.Promises { // less of either sign
+		p := &s.promised[g.Index]
+		p.mw = math.Copysign(max(math.Abs(p.mw)-g.Much, 0), p.mw)
 	}
 	s.note(l.Name, "lost", l.MW)
 }

@@ -27,8 +27,8 @@ type Unit struct {
 	SyntheticMWs float64
 }
 
-// Promise is a response that follows its shape from the first loss on, whatever
-// frequency does.
+// Promise is a response that follows its shape, whatever frequency does: from the first loss
+// of infeed on, or, taken off, from the first loss of load or export on.
 type Promise struct {
 	Name  string
 	Shape limits.Shape
@@ -54,6 +54,7 @@ type Loss struct {
 	Name       string
 	AtS        float64
 	MW         float64
+	LoadMW     float64 // of it load, which damps no more
 	InertiaMWs float64
 	Units      []Gone // of System.Units, by number of units
 	Promises   []Gone // of System.Promises, by MW
