@@ -20,18 +20,6 @@ const (
 	closedTolHz   = 1e-3 // the simulation's own error, see dynamic
 	closedTolStep = 2e-5
 	closedStill   = 2e-5 // Hz/s: less than a millihertz until the slowest dashpot has settled
-	// The loss that comes nearest to a limit in open loop is simulated, and every other one that
-	// would pass a limit if closed loop were worse than open loop by this much more than it was so
-	// far. In a slower fall triggered responses act later: a loss that needs them is simulated if
-	// it comes near to a limit at all. Droop delivers less of what it holds the less frequency
-	// falls, so a loss that takes nearly all of what it delivers at the steady limit is simulated.
-	// Where a response that is set off goes again within the time looked at, what it leaves can be
-	// worse than the loss: every loss that could set it off is simulated. One that droop alone would
-	// hold at less than a part of the level could not.
-	harmless      = 0.4
-	closedSlack   = 1.1
-	triggeredFrom = 0.75
-	staticFrom    = 0.6
 )
 
 // prepareClosed notes which responses follow a model.
@@ -53,7 +41,6 @@ func (s *Solver) prepareClosed() {
 func (s *Solver) proven(ctx context.Context, h *fleet.Hour, q *search, st *state, out Hour) (Hour, error) {
 	sim := s.sims.Get().(*dynamic.Simulator)
 	defer s.sims.Put(sim)
-	sys := s.sys
 	var shapes []limits.Shape
 	first := out.Cost
 	effort := out.Effort
@@ -62,7 +49,7 @@ func (s *Solver) proven(ctx context.Context, h *fleet.Hour, q *search, st *state
 			out.Closed.Mended = mends
 			return out, nil
 		}
-		failed := s.simulate(sim, sys, q, st, &out)
+		failed := s.simulate(sim, q, st, &out)
 		if out.Above != nil && len(failed) == 0 { // the other side once this one holds
 			failed = append(failed, s.simulateAbove(sim, q, st, &out)...)
 		}
@@ -87,7 +74,7 @@ func (s *Solver) proven(ctx context.Context, h *fleet.Hour, q *search, st *state
 		for _, sh := range shapes {
 			knots = append(knots, knotsOf(sh))
 		}
-		sys = s.system(knots)
+		sys := s.system(knots)
 		q = r
 		out, st = s.finish(p, q, sys)
 		out.Effort.Nodes += effort.Nodes
@@ -108,9 +95,9 @@ type failure struct {
 	rocofS float64
 }
 
-// simulate runs the losses that come near to a limit and fills in out.Closed. It gives those
-// that fail.
-func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search, st *state, out *Hour) []failure {
+// simulate runs every loss and fills in out.Closed: a small one can do more harm than a large one,
+// where response that it sets off goes again. It gives those that fail.
+func (s *Solver) simulate(sim *dynamic.Simulator, q *search, st *state, out *Hour) []failure {
 	p := q.m.p
 	on := NewOnline(s.c, p.Hour, out.Dispatch, st.unserved)
 	sys := &on.Sys
@@ -118,58 +105,30 @@ func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search
 	limit := [limits.Kinds]float64{l.MaxHzPerS, l.NadirHz, l.SteadyHz}
 	opt := s.closedOptions()
 	out.Closed = Closed{MarginHz: math.Inf(1)}
-	triggered := false
-	for i, m := range s.models {
-		triggered = triggered || m != nil && m.Kind == dynamic.Step && st.response[i] > 1e-6
-	}
-	damping := p.Hour.DampingMWPerHz
-	if p.Hour.DemandMW > 0 {
-		damping *= 1 - st.unserved/p.Hour.DemandMW
-	}
-	type candidate struct {
-		loss      *formulate.Loss
-		trip      dynamic.Loss
-		static    float64 // share of the response that droop delivers at the steady limit which the loss takes
-		severity  float64 // of the open-loop replay, by the limit nearest to it
-		triggered bool    // it passes a limit without the responses that must be set off
-	}
 	severity := func(rocof, nadir, steady float64) float64 {
 		return max(rocof/limit[limits.RoCoF], nadir/limit[limits.Nadir], steady/limit[limits.Steady])
 	}
+	type candidate struct {
+		loss     *formulate.Loss
+		trip     dynamic.Loss
+		severity float64 // of the open-loop replay, by the limit nearest to it
+	}
 	var list []candidate
 	for k := range p.Losses {
-		loss := &p.Losses[k]
-		mw, left, response := q.after(st, loss)
-		if mw <= 0 {
+		c := candidate{loss: &p.Losses[k], trip: s.trip(on, p, &p.Losses[k])}
+		if c.trip.MW <= 0 {
 			continue
 		}
 		o := st.replayed[k]
-		c := candidate{loss: loss, severity: severity(o.RoCoFHzPerS, o.NadirHz, o.SteadyHz)}
-		if triggered {
-			for i, m := range s.models {
-				if m != nil && m.Kind == dynamic.Step {
-					response[i] = 0
-				}
-			}
-			o = open.Run(replay.Event{LossMW: mw, InertiaMWs: left, DampingMWPerHz: damping, ResponseMW: response})
-			c.triggered = severity(o.RoCoFHzPerS, o.NadirHz, o.SteadyHz) > 1
-		}
-		c.trip = s.trip(on, p, loss)
-		c.static = (c.trip.MW - damping*l.SteadyHz) / max(s.atRest(sys, &c.trip), 1e-9)
+		c.severity = severity(o.RoCoFHzPerS, o.NadirHz, o.SteadyHz)
 		list = append(list, c)
 	}
+	// The worst come first: one that fails ends the round.
 	slices.SortStableFunc(list, func(a, b candidate) int { return cmp.Compare(b.severity, a.severity) })
-	level, stiffness := s.withdrawn(sys, damping)
-	ratio := 1.0 // the most that closed loop was worse than open loop
 	var failed []failure
 	for _, c := range list {
 		if len(failed) == mostRecorded {
-			break // they tell the others' story too: what they miss shows in the next round
-		}
-		near := c.severity*ratio*closedSlack > 1 || c.static > staticFrom || c.triggered && c.severity > triggeredFrom ||
-			level > 0 && c.trip.MW > harmless*level*stiffness
-		if !near && out.Closed.Simulated > 0 {
-			continue
+			break // it tells the others' story too: what it misses shows in the next round
 		}
 		d := c.trip
 		o := sim.Run(sys, []dynamic.Loss{d}, opt)
@@ -181,10 +140,6 @@ func (s *Solver) simulate(sim *dynamic.Simulator, open *replay.System, q *search
 			cl.NadirHz, cl.NadirS, cl.Loss = o.NadirHz, o.NadirS, c.loss.Name
 		}
 		cl.MarginHz = min(cl.MarginHz, l.NadirHz-o.NadirHz, l.SteadyHz-o.SteadyHz)
-		worst := severity(o.RoCoFHzPerS, o.NadirHz, o.SteadyHz)
-		if c.severity > 0 {
-			ratio = max(ratio, worst/c.severity)
-		}
 		f := failure{loss: d, sys: sys, nadirS: o.NadirS, rocofS: o.RoCoFS,
 			early:  o.RoCoFHzPerS > limit[limits.RoCoF]+closedTolHz || o.NadirHz > limit[limits.Nadir]+closedTolHz,
 			steady: o.SteadyHz > limit[limits.Steady]+closedTolHz}
@@ -224,58 +179,6 @@ func (s *Solver) simulateAbove(sim *dynamic.Simulator, q *search, st *state, out
 		}
 	}
 	return failed
-}
-
-// withdrawn gives the least level of those triggered responses that go again before the end
-// of the steady band's time, 0 if there are none, and the MW that a Hz of deviation asks of droop
-// and damping.
-func (s *Solver) withdrawn(sys *dynamic.System, damping float64) (level, stiffness float64) {
-	stiffness = damping
-	for i := range sys.Units {
-		u := &sys.Units[i]
-		switch m := u.Model; m.Kind {
-		case dynamic.Step:
-			c := m.Course
-			if ends := c.DelayS + c.RampS + c.HoldS; c.HoldS > 0 && ends < s.c.Limits.SteadyUntilS && (level == 0 || m.LevelHz < level) {
-				level = m.LevelHz
-			}
-		case dynamic.Synthetic:
-		default:
-			const small = 0.05 // Hz beyond the deadband, where no unit is at its room
-			stiffness += u.N * u.AtRest(sys.NominalHz, m.DeadbandHz+small, 0, 0) / small
-		}
-	}
-	return level, stiffness
-}
-
-// atRest is the MW that what a loss leaves delivers at the steady limit.
-func (s *Solver) atRest(sys *dynamic.System, d *dynamic.Loss) float64 {
-	l := s.c.Limits
-	mw := 0.0
-	for i := range sys.Units {
-		u := &sys.Units[i]
-		n := u.N
-		for _, g := range d.Units {
-			if g.Index == i {
-				n -= g.Much
-			}
-		}
-		mw += n * u.AtRest(l.NominalHz, l.SteadyHz, l.SteadyByS, l.SteadyUntilS)
-	}
-	for i := range sys.Promises {
-		p := &sys.Promises[i]
-		left := p.MW
-		for _, g := range d.Promises {
-			if g.Index == i {
-				left -= g.Much
-			}
-		}
-		if left < 0 { // promised downwards
-			continue
-		}
-		mw += left * min(p.Shape.At(l.SteadyByS), p.Shape.Before(l.SteadyUntilS))
-	}
-	return mw
 }
 
 // trip is a loss of the hour as the simulation sees it.

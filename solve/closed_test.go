@@ -19,8 +19,8 @@ func readCase(t testing.TB, path string) *fleet.Case {
 	return c
 }
 
-// Mixes of the demo that count as secure hold in closed loop after every single loss, those
-// too that the proof passed over as harmless: simulated anew, tightly, to the very end.
+// Mixes of the demo that count as secure hold in closed loop after every single loss: simulated
+// anew, tightly, to the very end.
 func TestSecureHoursHoldInClosedLoop(t *testing.T) {
 	provenEverywhere(t, readCase(t, filepath.Join("..", "testdata", "skerra", "case.yaml")), 83)
 }
@@ -39,6 +39,12 @@ func TestMendingActs(t *testing.T) {
 	if mended < c.Hours()/4 {
 		t.Errorf("%d of %d hours mended", mended, c.Hours())
 	}
+}
+
+// Response that is set off and goes again makes small losses worse than large ones: none may
+// be passed over.
+func TestWithdrawnResponse(t *testing.T) {
+	provenEverywhere(t, readCase(t, filepath.Join("testdata", "withdrawn.yaml")), 1)
 }
 
 func provenEverywhere(t *testing.T, c *fleet.Case, every int) (mended int) {

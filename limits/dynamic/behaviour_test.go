@@ -286,3 +286,17 @@ func TestLaterLossDoesTheSame(t *testing.T) {
 		}
 	}
 }
+
+// What is lost altogether is out of the equations: its filter would be followed in steps that
+// are too long for it, as nothing hangs on it any more.
+func TestLostUnitsAreLeftOut(t *testing.T) {
+	syn := &Model{Kind: Synthetic, FilterS: 0.05}
+	hydro := Defaults(Hydro)
+	sys := &System{NominalHz: 50, LoadMW: 300, DampingPctPerHz: 1, InertiaMWs: 1500, Units: []Unit{
+		{Name: "battery", Model: syn, N: 1, RatingMW: 30, UpMW: 10, DownMW: 10, SyntheticMWs: 300}, {Name: "river", Model: &hydro, N: 2, RatingMW: 60, UpMW: 25}}}
+	o := run(t, sys, []Loss{{Name: "battery", MW: 20, Units: []Gone{{Index: 0, Much: 1}}}}, Options{SteadyByS: 30, UntilS: 600, TolHz: 2e-5})
+	sys.Units = sys.Units[1:]
+	want := run(t, sys, []Loss{{Name: "battery", MW: 20}}, Options{SteadyByS: 30, UntilS: 600, TolHz: 2e-5})
+	near(t, "nadir", o.NadirHz, want.NadirHz, 1e-9)
+	near(t, "end", o.EndHz, want.EndHz, 1e-6)
+}

@@ -106,8 +106,12 @@ func (s *Simulator) segment() (still bool) {
 			h = to - s.t
 		}
 		worst := s.attempt(h)
-		if worst > s.opt.TolHz && h > leastStepS {
-			h *= max(0.2, 0.9*math.Cbrt(s.opt.TolHz/worst))
+		if !(worst <= s.opt.TolHz) && h > leastStepS { // a number gone wild is no good either
+			if shorter := 0.9 * math.Cbrt(s.opt.TolHz/worst); shorter > 0.2 {
+				h *= shorter
+			} else {
+				h *= 0.2
+			}
 			continue
 		}
 		if at, ok := s.passes(h); ok && at < s.t+h-leastStepS {

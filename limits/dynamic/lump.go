@@ -18,6 +18,7 @@ type lump struct {
 	delay      float64
 	mwsPerHz   float64 // Synthetic: 2·E/f0 of all units
 	up, down   float64 // MW of all units
+	gone       bool    // no unit is left
 	reach      float64 // beyond the deadband, from where on all units are at their room
 
 	at     int // first state
@@ -66,8 +67,10 @@ func (l *lump) takes(m *Model, p *part, exactly bool) bool {
 // total sums up what hangs on the number of units.
 func (l *lump) total() {
 	l.rate, l.mwsPerHz, l.up, l.down, l.reach = 0, 0, 0, 0, 0
+	l.gone = true
 	for i := range l.parts {
 		p := &l.parts[i]
+		l.gone = l.gone && p.n <= 0
 		l.rate += p.n * p.rate
 		l.mwsPerHz += p.n * p.mwsPerHz
 		l.up += p.n * p.up
@@ -149,6 +152,10 @@ func (l *lump) limited(v float64) float64 {
 // derivatives of its states.
 func (l *lump) derive(x float64, y, dy []float64) float64 {
 	i := l.at
+	if l.gone {
+		clear(dy[i : i+l.states])
+		return 0
+	}
 	stage := func(in, r float64) float64 {
 		if r == 0 {
 			return in

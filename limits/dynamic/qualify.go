@@ -112,31 +112,6 @@ func (s *Simulator) Deliver(u *Unit, nominalHz float64, deviation func(t float64
 	return out
 }
 
-// AtRest is what one unit delivers in the end at a deviation below nominal that stays:
-// what its droop asks for, or the least of its course between two instants after the loss if
-// the deviation sets it off.
-func (u *Unit) AtRest(nominalHz, x, fromS, toS float64) float64 {
-	switch m := u.Model; m.Kind {
-	case Synthetic:
-		return 0
-	case Step:
-		shape, err := m.Course.Shape()
-		if err != nil || x < m.LevelHz {
-			return 0
-		}
-		least := min(shape.At(fromS), shape.Before(toS))
-		for _, k := range shape.Knots() {
-			if k.S > fromS && k.S < toS {
-				least = min(least, k.Share)
-			}
-		}
-		return u.UpMW * least
-	default:
-		p := partOf(u, nominalHz)
-		return min(p.k*max(x-m.DeadbandHz, 0), p.up)
-	}
-}
-
 func add(out, y, k []float64, h float64) {
 	for i := range out {
 		out[i] = y[i] + h*k[i]
