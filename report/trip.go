@@ -84,7 +84,7 @@ func TripText(w io.Writer, t *study.Trip) error {
 	p.line("  %s %s", padRight("RoCoF at its steepest", 28), fixed(t.InstantHzPerS, 3)+" Hz/s")
 	row("nadir", fmt.Sprintf("%s Hz at %s s", fixed(f0-t.NadirHz, 3), fixed(t.NadirS, 2)), plain(f0-l.NadirHz), t.NadirHz <= l.NadirHz+tol)
 	row("steady, "+plain(l.SteadyByS)+" s after the last", fixed(f0-t.SteadyHz, 3)+" Hz", plain(f0-l.SteadyHz), t.SteadyHz <= l.SteadyHz+tol)
-	switch a := t.Mix.Case.Above; {
+	switch a := t.Above; {
 	case a != nil && t.PeakHz > 0.01:
 		row("RoCoF upwards", fixed(t.RiseHzPerS, 3)+" Hz/s", plain(a.MaxHzPerS), t.RiseHzPerS <= a.MaxHzPerS+tol)
 		row("peak", fmt.Sprintf("%s Hz at %s s", fixed(f0+t.PeakHz, 3), fixed(t.PeakS, 2)), plain(f0+a.NadirHz), t.PeakHz <= a.NadirHz+tol)

@@ -60,8 +60,8 @@ func tripFigure(t *study.Trip) figure {
 	upper.Y.Label.Text = "frequency, Hz"
 	low := min(max(t.NadirHz, t.Limits.NadirHz)*1.08, 10)
 	upper.Y.Min, upper.Y.Max = f0-low, f0+max(t.PeakHz*1.1, 0.03)
-	above := t.Mix.Case.Above
-	if t.PeakHz < 0.05 {
+	above := t.Above
+	if above != nil && (t.PeakHz < 0.05 || math.IsInf(above.NadirHz, 1) || math.IsInf(above.SteadyHz, 1)) {
 		above = nil // nothing to be held against it
 	}
 	if above != nil {

@@ -85,11 +85,19 @@ func Match(r *Record, nominalHz, loadMW, lostMW, afterS float64) (*Fit, error) {
 	if len(r.S) < 20 {
 		return nil, fmt.Errorf("the record has %d usable samples, want at least 20", len(r.S))
 	}
-	if lostMW == 0 {
-		return nil, errors.New("--lost is 0 MW, want what was lost (negative: load)")
+	if lostMW == 0 || math.IsNaN(lostMW) || math.IsInf(lostMW, 0) {
+		return nil, fmt.Errorf("--lost is %g MW, want what was lost (negative: load)", lostMW)
+	}
+	if gap := usualGap(r); gap > 1.05 {
+		return nil, fmt.Errorf("the record has a sample every %.3g s, want one a second or more often, times in seconds", gap)
+	} else if gap < 0.001 {
+		return nil, fmt.Errorf("the record has a sample every %.3g s, want times in seconds", gap)
 	}
 	start, offset, noise, err := findEvent(r, nominalHz)
 	if err != nil {
+		return nil, err
+	}
+	if err := sideOf(r, start, offset+nominalHz, lostMW); err != nil {
 		return nil, err
 	}
 	use := thin(window(r, start, afterS), start)
@@ -111,6 +119,34 @@ func Match(r *Record, nominalHz, loadMW, lostMW, afterS float64) (*Fit, error) {
 	f.StartS, f.OffsetHz = best[parStart], best[parOffset]
 	m.intervals(f, best, res)
 	return f, nil
+}
+
+// usualGap is the median time between samples, s.
+func usualGap(r *Record) float64 {
+	gaps := make([]float64, 0, len(r.S))
+	for i := 1; i < len(r.S); i++ {
+		gaps = append(gaps, r.S[i]-r.S[i-1])
+	}
+	slices.Sort(gaps)
+	return gaps[len(gaps)/2]
+}
+
+// sideOf refuses a loss whose sign the record contradicts: the loss of infeed lowers frequency.
+func sideOf(r *Record, start, level, lostMW float64) error {
+	furthest := 0.0
+	for i := range r.S {
+		if d := level - r.Hz[i]; r.S[i] > start && r.S[i] < start+10 && math.Abs(d) > math.Abs(furthest) {
+			furthest = d
+		}
+	}
+	if furthest*lostMW < 0 {
+		way := "rises"
+		if furthest > 0 {
+			way = "falls"
+		}
+		return fmt.Errorf("frequency %s after the event, which %g MW lost do not explain (negative: load)", way, lostMW)
+	}
+	return nil
 }
 
 // clean drops samples that are no number and puts the rest in order of time, one a moment.

@@ -4,6 +4,7 @@ import (
 	"errors"
 	"math"
 	"math/rand/v2"
+	"strings"
 	"testing"
 
 	"gonum.org/v1/gonum/mat"
@@ -132,5 +133,43 @@ func TestMatchModelAgainstMatrixExponential(t *testing.T) {
 				t.Errorf("%v at %g s: %.12g, want %.12g", v, at, got, want)
 			}
 		}
+	}
+}
+
+// Records as loggers and spreadsheets write them.
+func TestReadRecord(t *testing.T) {
+	for _, text := range []string{
+		"time_s,hz\n0,50.001\n0.5,49.99\n1,49.98\n",
+		"0;50,001\n0,5;49,99\n1;49,98\n",
+		"\"0\",\"50,001\"\n\"0,5\",\"49,99\"\n\"1\",\"49,98\"\n",
+		"\uFEFF# a comment\nt\tf\n0\t50.001\n0.5\t49.99\n1\t49.98\n",
+		"2019-08-09T15:52:33Z,50.001\n2019-08-09T15:52:33.5Z,49.99\n2019-08-09T15:52:34Z,49.98\n",
+		"0 50.001\nnan nan\n0.5 49.99\n1 49.98\n",
+	} {
+		r, _, err := ReadRecord(strings.NewReader(text), "x.csv")
+		if err != nil || len(r.S) != 3 || r.S[1] != 0.5 || r.S[2] != 1 || r.Hz[0] != 50.001 || r.Hz[2] != 49.98 {
+			t.Errorf("%q: %v %+v", text, err, r)
+		}
+	}
+	for _, text := range []string{"", "a\nb\n", "1\n2\n", "0,5000\n1,5000\n"} {
+		if _, _, err := ReadRecord(strings.NewReader(text), "x.csv"); err == nil {
+			t.Errorf("%q is taken", text)
+		}
+	}
+}
+
+// What contradicts the record, or is no record in seconds, is refused.
+func TestMatchRefusesContradictions(t *testing.T) {
+	r, _ := noisy(rand.New(rand.NewPCG(2, 9)), 0.1, 0.001, 20_000, 40, 600, 3, 200)
+	for _, lost := range []float64{-200, 0, math.NaN(), math.Inf(1)} {
+		if _, err := Match(r, 50, 5000, lost, 0); err == nil {
+			t.Errorf("%g MW taken", lost)
+		}
+	}
+	for i := range r.S {
+		r.S[i] *= 1000
+	}
+	if _, err := Match(r, 50, 5000, 200, 0); err == nil {
+		t.Error("milliseconds taken for seconds")
 	}
 }

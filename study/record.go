@@ -2,6 +2,7 @@ package study
 
 import (
 	"bufio"
+	"encoding/csv"
 	"fmt"
 	"io"
 	"math"
@@ -55,6 +56,16 @@ func ReadRecord(r io.Reader, name string) (rec *Record, dropped int, err error) 
 }
 
 func split(text string) []string {
+	if strings.Contains(text, `"`) { // quoted, perhaps with decimal commas inside
+		rows := csv.NewReader(strings.NewReader(text))
+		rows.TrimLeadingSpace = true
+		if strings.Contains(text, ";") {
+			rows.Comma = ';'
+		}
+		if parts, err := rows.Read(); err == nil {
+			return parts
+		}
+	}
 	for _, sep := range []string{";", "\t", ","} {
 		if strings.Contains(text, sep) {
 			parts := strings.Split(text, sep)
@@ -69,7 +80,7 @@ func split(text string) []string {
 
 // readTime reads seconds, or a time stamp counted from the first one.
 func readTime(text string, first time.Time) (s float64, stamp time.Time, ok bool) {
-	if x, err := strconv.ParseFloat(text, 64); err == nil && !math.IsNaN(x) && !math.IsInf(x, 0) {
+	if x, err := strconv.ParseFloat(strings.Replace(text, ",", ".", 1), 64); err == nil && !math.IsNaN(x) && !math.IsInf(x, 0) {
 		return x, time.Time{}, true
 	}
 	for _, form := range []string{time.RFC3339Nano, "2006-01-02T15:04:05.999999999", "2006-01-02 15:04:05.999999999", "2006-01-02 15:04:05.999999999Z07:00"} {

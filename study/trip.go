@@ -22,6 +22,7 @@ type WhatIf struct {
 type Trip struct {
 	Mix     *Mix
 	Limits  limits.Limits
+	Above   *limits.Limits // nil: none
 	Losses  []dynamic.Loss
 	Sys     dynamic.System
 	Sources []string // names of Outcome.MW
@@ -56,7 +57,7 @@ func ParseLoss(text string) (LossAt, error) {
 }
 
 // RunTrip simulates the losses, in order of time.
-func RunTrip(m *Mix, losses []LossAt, w WhatIf, l limits.Limits) (*Trip, error) {
+func RunTrip(m *Mix, losses []LossAt, w WhatIf, l limits.Limits, above *limits.Limits) (*Trip, error) {
 	d := append([]solve.Dispatch(nil), m.Dispatch...)
 	for _, name := range w.Without {
 		if err := silence(m.Case, d, name); err != nil {
@@ -68,7 +69,7 @@ func RunTrip(m *Mix, losses []LossAt, w WhatIf, l limits.Limits) (*Trip, error) 
 	if !(on.Sys.InertiaMWs > 0) {
 		return nil, fmt.Errorf("no kinetic energy is left: %.1f MW·s with the change of %.1f", on.Sys.InertiaMWs, w.InertiaMWs)
 	}
-	t := &Trip{Mix: m, Limits: l, Sys: on.Sys}
+	t := &Trip{Mix: m, Limits: l, Above: above, Sys: on.Sys}
 	lost := map[int]float64{}
 	last := 0.0
 	for _, a := range losses {
@@ -187,12 +188,18 @@ func (t *Trip) FirstStage() (name string, marginHz float64, ok bool) {
 	return name, marginHz, ok
 }
 
-// ParseLimit changes one limit: rocof=, nadir= or steady=.
-func ParseLimit(l limits.Limits, text string) (limits.Limits, error) {
+// ParseLimit changes one limit: rocof=, nadir= or steady=, or above nominal rise=, peak= or
+// steady_over=.
+func ParseLimit(l limits.Limits, above *limits.Limits, text string) (limits.Limits, *limits.Limits, error) {
 	name, value, _ := strings.Cut(text, "=")
 	x, err := strconv.ParseFloat(value, 64)
+	bad := fmt.Errorf("--limit %q: want rocof=, nadir= or steady= and a number above 0; above nominal rise=, peak= or steady_over=", text)
 	if err != nil || !(x > 0) {
-		return l, fmt.Errorf("--limit %q: want rocof=, nadir= or steady= and a number above 0", text)
+		return l, above, bad
+	}
+	up := limits.Limits{NominalHz: l.NominalHz, MaxHzPerS: math.Inf(1), NadirHz: math.Inf(1), SteadyHz: math.Inf(1)}
+	if above != nil {
+		up = *above
 	}
 	switch name {
 	case "rocof":
@@ -201,8 +208,14 @@ func ParseLimit(l limits.Limits, text string) (limits.Limits, error) {
 		l.NadirHz = x
 	case "steady":
 		l.SteadyHz = x
+	case "rise":
+		up.MaxHzPerS, above = x, &up
+	case "peak":
+		up.NadirHz, above = x, &up
+	case "steady_over":
+		up.SteadyHz, above = x, &up
 	default:
-		return l, fmt.Errorf("--limit %q: want rocof=, nadir= or steady= and a number above 0", text)
+		return l, above, bad
 	}
-	return l, nil
+	return l, above, nil
 }

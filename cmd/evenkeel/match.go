@@ -2,6 +2,7 @@ package main
 
 import (
 	"errors"
+	"math"
 	"os"
 	"path/filepath"
 
@@ -24,7 +25,7 @@ func matchCommand() *cobra.Command {
 			"unknown start are taken. What the record cannot tell is said to be so.",
 		Args: caseFile,
 		RunE: func(cmd *cobra.Command, args []string) error {
-			if event == "" || lost == 0 {
+			if event == "" || lost == 0 || math.IsNaN(lost) || math.IsInf(lost, 0) {
 				return bad("match needs --event EVENT.csv and --lost MW, not 0 (negative: load)")
 			}
 			if !(after >= 1) {

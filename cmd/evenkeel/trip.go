@@ -68,13 +68,13 @@ func trip(cmd *cobra.Command, path string, f tripFlags) error {
 		}
 		losses = append(losses, l)
 	}
-	l := c.Limits
+	l, above := c.Limits, c.Above
 	for _, text := range f.limit {
-		if l, err = study.ParseLimit(l, text); err != nil {
+		if l, above, err = study.ParseLimit(l, above, text); err != nil {
 			return bad("%w", err)
 		}
 	}
-	t, err := study.RunTrip(mix, losses, study.WhatIf{InertiaMWs: f.inertia, Without: f.without}, l)
+	t, err := study.RunTrip(mix, losses, study.WhatIf{InertiaMWs: f.inertia, Without: f.without}, l, above)
 	if err != nil {
 		return bad("%w", err)
 	}
