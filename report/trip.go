@@ -134,7 +134,7 @@ func TripText(w io.Writer, t *study.Trip) error {
 func sum(v []float64) float64 {
 	s := 0.0
 	for _, x := range v {
-		if !math.IsInf(x, 0) {
+		if x > 0 && !math.IsInf(x, 0) { // what is promised downwards is below zero
 			s += x
 		}
 	}
