@@ -42,6 +42,21 @@ losses:
 
 const tinyCSV = "time,demand,river\n2031-03-03T00:00:00Z,180,0.5\n2031-03-03T01:00:00Z,170,0.6\n2031-03-03T02:00:00Z,165,1\n"
 
+// tinyModels is tiny with dynamic models, relays and the other side of nominal.
+var tinyModels = strings.NewReplacer(
+	"  steady: {max", "  above: {rocof_hz_per_s: 0.9, peak_hz: 0.8, steady_hz: 0.5}\n  steady: {max",
+	"response: {shape: slow, cap_mw: 15, price_per_mw: 2}}", "response: {model: turbine, cap_mw: 10}, down: {model: turbine, cap_mw: 10}}",
+	"{name: Busbar, mw: 12}", "{name: Feeder, mw: 9, over: true}",
+	"synthetic_inertia: {cap_mws: 100}", "synthetic_inertia: {cap_mws: 100, filter_s: 0.1}, down: {shape: fast, cap_mw: 5}",
+).Replace(tiny) + `models:
+  - {name: turbine, kind: steam, droop_pct: 4, qualification: {hz_per_s: 0.3, to_hz: 0.5}}
+  - {name: river, kind: hydro, water_s: 1.5}
+  - {name: relay, kind: step, level_hz: 0.3, delay_s: 0.2, ramp_s: 0.1, hold_s: 30, withdraw_s: 5, rest_s: 60}
+relays:
+  - {name: Stage, level_hz: 1, delay_s: 0.2, shed_share: 0.1}
+  - {name: Roofs, rocof_hz_per_s: 2, window_s: 0.5, lost_mw: load.csv:river}
+`
+
 // readText reads a case out of texts: every series file is the same.
 func readText(yaml, csv string) (*Case, Findings) {
 	return read("case.yaml", func(path string, most int64) ([]byte, error) {
@@ -62,6 +77,7 @@ func readText(yaml, csv string) (*Case, Findings) {
 // into hours of finite numbers or with at least one error, and each finding is one line.
 func FuzzRead(f *testing.F) {
 	f.Add(tiny, tinyCSV)
+	f.Add(tinyModels, tinyCSV)
 	for _, r := range [][2]string{{"50", "5e1"}, {"0.5, by_s", "x, by_s"}, {"count: 2", "count: 10000"}, {"[River, Wheel]", "*s"}, {"- {name: drawn", "- &a {<<: *a, name: drawn"},
 		{"points: [[0.4, 0], [0.4, 0.5], [2, 1]]", "points: [[1e308, 1]]"}, {"tiny", "\xff"}} {
 		f.Add(strings.Replace(tiny, r[0], r[1], 1), tinyCSV)
@@ -112,6 +128,13 @@ func TestTinyIsGood(t *testing.T) {
 		t.Error(f)
 	}
 	if c == nil || c.Hours() != 3 || len(c.Resources) != 6 || len(c.Shapes) != 4 {
+		t.Errorf("%+v", c)
+	}
+	c, found = readText(tinyModels, tinyCSV)
+	for _, f := range found {
+		t.Error(f)
+	}
+	if c == nil || len(c.Models) != 3 || len(c.Shapes) != 7 || len(c.Relays) != 2 || c.Above == nil {
 		t.Errorf("%+v", c)
 	}
 }
