@@ -137,7 +137,7 @@ func (s *Simulator) segment() (still bool) {
 			grow = min(grow, 0.9*math.Cbrt(s.opt.TolHz/worst))
 		}
 		h *= max(grow, 0.3)
-		if to == s.horizon || len(s.events) <= 3 {
+		if s.t < to && (to == s.horizon || len(s.events) <= 3) { // at an event, it has its say first
 			if s.quiet() {
 				s.rest()
 				return true
