@@ -16,6 +16,11 @@ func (k Kind) Word() string {
 	return [...]string{"RoCoF", "nadir", "steady"}[k]
 }
 
+// WordAbove names the limit's mirror above nominal in text.
+func (k Kind) WordAbove() string {
+	return [...]string{"RoCoF upwards", "peak", "steady above"}[k]
+}
+
 func (k Kind) String() string {
 	return [...]string{"rocof", "nadir", "steady"}[k]
 }

@@ -9,11 +9,8 @@ import (
 	"evenkeel/solve"
 )
 
-// aboveNames are the limits above nominal, in files and in text.
-var (
-	aboveNames = [limits.Kinds]string{limits.RoCoF: "rise", limits.Nadir: "peak", limits.Steady: "steady_over"}
-	aboveWords = [limits.Kinds]string{limits.RoCoF: "RoCoF upwards", limits.Nadir: "peak", limits.Steady: "steady above"}
-)
+// aboveNames are the limits above nominal in files.
+var aboveNames = [limits.Kinds]string{limits.RoCoF: "rise", limits.Nadir: "peak", limits.Steady: "steady_over"}
 
 // aboveHeader lists the columns of hours.csv for the other side of nominal; none where the
 // case has no limits there.
@@ -150,7 +147,7 @@ func (p *page) above() {
 			price = amount(b.price.mean()) + " per " + priceUnit(limits.Kind(k))
 			hod, month = hourWindow(b.byHour), monthWindow(b.byMonth)
 		}
-		p.limitRow(aboveWords[k]+" binds", count(b.binding), share(b.binding, len(p.hours)), hod, month, price)
+		p.limitRow(limits.Kind(k).WordAbove()+" binds", count(b.binding), share(b.binding, len(p.hours)), hod, month, price)
 	}
 	for s := range t.down {
 		if w := t.down[s]; w.hours > 0 && offeredDown(p.c, s) {

@@ -288,7 +288,7 @@ func (s *Solver) mend(sim *dynamic.Simulator, q *search, st *state, shapes []lim
 						if math.IsInf(atNadir, 1) {
 							least = share
 						}
-						if opt.EndS > 0 && t > opt.EndS {
+						if t > opt.EndS {
 							least = atNadir
 						}
 					}

@@ -4,6 +4,7 @@ import (
 	"context"
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 	"sync"
 
@@ -213,17 +214,29 @@ func settle(list *[limits.Kinds]LimitResult) {
 // leastPrice is the smallest price of a limit that counts: a row can be tight at no cost.
 const leastPrice = 1e-4
 
-// after is what a loss takes and what it leaves: MW lost, kinetic energy and response left.
-func (s *search) after(st *state, l *formulate.Loss) (mw, left float64, response []float64) {
-	mw, left = l.FixedMW, st.inertia
-	response = append([]float64(nil), st.response...)
+// after is what a loss takes and what it leaves: MW lost, kinetic energy and response left;
+// for a loss of load or export, the load lost and the response downwards left.
+func (s *search) after(st *state, l *formulate.Loss, over bool) (mw, left float64, response []float64) {
+	p := s.m.p
+	sign := 1.0
+	mw, left, response = l.FixedMW, st.inertia, st.response
+	if over {
+		sign = -1
+		left += p.AboveInertiaMWs - p.Hour.LoadInertiaMWs
+		response = st.down
+	}
+	response = slices.Clone(response)
 	for _, c := range l.Classes {
 		share := s.share(l, c)
-		part := &st.class[c]
-		mw += share * part.mw
+		part, cl := &st.class[c], &p.Classes[c]
+		mw += sign * share * part.mw
 		left -= share * part.inertia
-		if sh := s.m.p.Classes[c].Shape; sh >= 0 {
-			response[sh] -= share * part.response
+		shape, held := cl.Shape, part.response
+		if over {
+			shape, held = cl.Down, part.down
+		}
+		if shape >= 0 {
+			response[shape] -= share * held
 		}
 	}
 	return mw, left, response
@@ -248,39 +261,11 @@ func (s *Solver) replay(sys *replay.System, q *search, st *state, out *Hour) {
 	if p.Hour.DemandMW > 0 {
 		damping *= 1 - out.UnservedMW/p.Hour.DemandMW
 	}
-	var worst [limits.Kinds]float64
-	st.replayed = make([]replay.Outcome, len(p.Losses))
-	for k := range p.Losses {
-		l := &p.Losses[k]
-		mw, left, response := q.after(st, l)
-		if mw <= 0 {
-			continue
-		}
-		o := sys.Run(replay.Event{LossMW: mw, InertiaMWs: left, DampingMWPerHz: damping, ResponseMW: response})
-		st.replayed[k] = o
-		for kind, v := range [limits.Kinds]float64{o.RoCoFHzPerS, o.NadirHz, o.SteadyHz} {
-			if v > worst[kind] {
-				worst[kind] = v
-				out.Limits[kind].Loss = l.Name
-				if limits.Kind(kind) == limits.Nadir {
-					out.WorstLoss, out.WorstLossMW, out.InertiaLeftMWs, out.NadirS = l.Name, mw, left, o.NadirS
-				}
-			}
-		}
-	}
-	out.RoCoFHzPerS, out.NadirHz, out.SteadyHz = worst[limits.RoCoF], worst[limits.Nadir], worst[limits.Steady]
-	var why []string
-	for kind := range out.Limits {
-		l := &out.Limits[kind]
-		l.Margin = limit[kind] - worst[kind]
-		name := limits.Kind(kind).Word()
-		switch {
-		case l.ShortMW > 0:
-			why = append(why, fmt.Sprintf("%s short by %.1f MW of the loss", name, l.ShortMW))
-		case !(l.Margin >= -replayTolHz):
-			why = append(why, fmt.Sprintf("%s %s in the replay, limit %.3g", name, beyond(limits.Kind(kind), worst[kind]), limit[kind]))
-		}
-	}
+	r := q.replayed(sys, st, p.Losses, false, damping)
+	st.replayed = r.outcomes
+	out.RoCoFHzPerS, out.NadirHz, out.SteadyHz = r.worst[limits.RoCoF], r.worst[limits.Nadir], r.worst[limits.Steady]
+	out.WorstLoss, out.WorstLossMW, out.InertiaLeftMWs, out.NadirS = r.loss[limits.Nadir], r.deepestMW, r.deepestLeft, r.deepestS
+	why := r.judge(&out.Limits, limit, limits.Kind.Word)
 	if out.Above != nil {
 		why = append(why, s.replayAbove(sys, q, st, out)...)
 	}
@@ -305,58 +290,56 @@ func (s *Solver) replayAbove(sys *replay.System, q *search, st *state, out *Hour
 	if p.Hour.DemandMW > 0 {
 		damping *= max(0, 1-out.UnservedMW/p.Hour.DemandMW)
 	}
-	var worst [limits.Kinds]float64
-	for k := range p.OverLosses {
-		l := &p.OverLosses[k]
-		mw, left, down := q.afterOver(st, l)
+	r := q.replayed(sys, st, p.OverLosses, true, damping)
+	a.RoCoFHzPerS, a.PeakHz, a.SteadyHz = r.worst[limits.RoCoF], r.worst[limits.Nadir], r.worst[limits.Steady]
+	a.WorstLoss, a.WorstLossMW, a.PeakS = r.loss[limits.Nadir], r.deepestMW, r.deepestS
+	return r.judge(&a.Limits, limit, limits.Kind.WordAbove)
+}
+
+// replays is what the replays of a mix's losses on one side of nominal show.
+type replays struct {
+	outcomes []replay.Outcome // one a loss; zero where nothing is lost
+	worst    [limits.Kinds]float64
+	loss     [limits.Kinds]string // the worst one's name
+
+	// Of the loss with the deepest nadir, or the highest peak.
+	deepestMW, deepestLeft, deepestS float64 // lost, MW; kinetic energy left, MW·s; its instant, s
+}
+
+func (s *search) replayed(sys *replay.System, st *state, losses []formulate.Loss, over bool, damping float64) *replays {
+	r := &replays{outcomes: make([]replay.Outcome, len(losses))}
+	for k := range losses {
+		mw, left, response := s.after(st, &losses[k], over)
 		if mw <= 0 {
 			continue
 		}
-		o := sys.Run(replay.Event{LossMW: mw, InertiaMWs: left, DampingMWPerHz: damping, ResponseMW: down})
+		o := sys.Run(replay.Event{LossMW: mw, InertiaMWs: left, DampingMWPerHz: damping, ResponseMW: response})
+		r.outcomes[k] = o
 		for kind, v := range [limits.Kinds]float64{o.RoCoFHzPerS, o.NadirHz, o.SteadyHz} {
-			if v > worst[kind] {
-				worst[kind] = v
-				a.Limits[kind].Loss = l.Name
+			if v > r.worst[kind] {
+				r.worst[kind], r.loss[kind] = v, losses[k].Name
 				if limits.Kind(kind) == limits.Nadir {
-					a.WorstLoss, a.WorstLossMW, a.PeakS = l.Name, mw, o.NadirS
+					r.deepestMW, r.deepestLeft, r.deepestS = mw, left, o.NadirS
 				}
 			}
 		}
 	}
-	a.RoCoFHzPerS, a.PeakHz, a.SteadyHz = worst[limits.RoCoF], worst[limits.Nadir], worst[limits.Steady]
-	for kind := range a.Limits {
-		l := &a.Limits[kind]
-		l.Margin = limit[kind] - worst[kind]
-		name := aboveWord(limits.Kind(kind))
+	return r
+}
+
+// judge holds the replays against the limits, fills in the results and says what is wrong.
+func (r *replays) judge(results *[limits.Kinds]LimitResult, limit [limits.Kinds]float64, word func(limits.Kind) string) (why []string) {
+	for k := range results {
+		l, kind := &results[k], limits.Kind(k)
+		l.Loss, l.Margin = r.loss[k], limit[k]-r.worst[k]
 		switch {
 		case l.ShortMW > 0:
-			why = append(why, fmt.Sprintf("%s short by %.1f MW of the loss", name, l.ShortMW))
+			why = append(why, fmt.Sprintf("%s short by %.1f MW of the loss", word(kind), l.ShortMW))
 		case !(l.Margin >= -replayTolHz):
-			why = append(why, fmt.Sprintf("%s %s in the replay, limit %.3g", name, beyond(limits.Kind(kind), worst[kind]), limit[kind]))
+			why = append(why, fmt.Sprintf("%s %s in the replay, limit %.3g", word(kind), beyond(kind, r.worst[k]), limit[k]))
 		}
 	}
 	return why
-}
-
-func aboveWord(k limits.Kind) string {
-	return [...]string{"RoCoF upwards", "peak", "steady above"}[k]
-}
-
-// afterOver is after for a loss of load or export.
-func (s *search) afterOver(st *state, l *formulate.Loss) (mw, left float64, down []float64) {
-	p := s.m.p
-	mw, left = l.FixedMW, st.inertia-p.Hour.LoadInertiaMWs+p.AboveInertiaMWs
-	down = append([]float64(nil), st.down...)
-	for _, c := range l.Classes {
-		share := s.share(l, c)
-		part := &st.class[c]
-		mw -= share * part.mw
-		left -= share * part.inertia
-		if sh := p.Classes[c].Down; sh >= 0 {
-			down[sh] -= share * part.down
-		}
-	}
-	return mw, left, down
 }
 
 // collapseHz is a deviation far beyond any protection (common practice): what a replay shows

@@ -91,34 +91,10 @@ type lostResponse struct {
 func (m *master) losses(st *state, units []int, out []lost) []lost {
 	out = out[:0]
 	for k := range m.p.Losses {
-		l := &m.p.Losses[k]
-		v := lost{loss: k, average: 1, mw: l.FixedMW}
-		if len(out) < cap(out) { // keep the old slice's memory
-			v.response = out[:len(out)+1][len(out)].response[:0]
-		}
-		for _, c := range l.Classes {
-			part := &st.class[c]
-			share := 1.0
-			if l.Single {
-				if units[c] == 0 {
-					continue
-				}
-				v.average = units[c]
-				share = 1 / float64(units[c])
-			}
-			v.mw += share * part.mw
-			v.inertia += share * part.inertia
-			if s := m.p.Classes[c].Shape; s >= 0 && part.response > 0 {
-				v.response = append(v.response, lostResponse{s, share * part.response})
-			}
-		}
-		if v.mw <= 0 {
-			continue
-		}
-		out = append(out, v)
+		out = m.addLost(out, st, units, k, false)
 	}
-	if m.p.Above != nil {
-		out = m.lostLoad(st, units, out)
+	for k := range m.p.OverLosses {
+		out = m.addLost(out, st, units, k, true)
 	}
 	// Dropping the dominated ones swaps, so the order is fixed first: largest first.
 	slices.SortFunc(out, func(a, b lost) int {
@@ -151,35 +127,41 @@ func sideOf(v lost) int {
 	return 0
 }
 
-// lostLoad adds the losses above nominal.
-func (m *master) lostLoad(st *state, units []int, out []lost) []lost {
-	for k := range m.p.OverLosses {
-		l := &m.p.OverLosses[k]
-		v := lost{loss: k, over: true, average: 1, mw: l.FixedMW}
-		if len(out) < cap(out) {
-			v.response = out[:len(out)+1][len(out)].response[:0]
-		}
-		for _, c := range l.Classes {
-			part := &st.class[c]
-			share := 1.0
-			if l.Single {
-				if units[c] == 0 {
-					continue
-				}
-				v.average = units[c]
-				share = 1 / float64(units[c])
+// addLost adds a loss, of Problem.OverLosses if over, unless nothing is lost by it.
+func (m *master) addLost(out []lost, st *state, units []int, k int, over bool) []lost {
+	losses, sign := m.p.Losses, 1.0
+	if over { // infeed that goes with the load makes the loss smaller
+		losses, sign = m.p.OverLosses, -1
+	}
+	l := &losses[k]
+	v := lost{loss: k, over: over, average: 1, mw: l.FixedMW}
+	if len(out) < cap(out) { // keep the old slice's memory
+		v.response = out[:len(out)+1][len(out)].response[:0]
+	}
+	for _, c := range l.Classes {
+		part, cl := &st.class[c], &m.p.Classes[c]
+		share := 1.0
+		if l.Single {
+			if units[c] == 0 {
+				continue
 			}
-			v.mw -= share * part.mw
-			v.inertia += share * part.inertia
-			if s := m.p.Classes[c].Down; s >= 0 && part.down > 0 {
-				v.response = append(v.response, lostResponse{s, share * part.down})
-			}
+			v.average = units[c]
+			share = 1 / float64(units[c])
 		}
-		if v.mw > 0 {
-			out = append(out, v)
+		v.mw += sign * share * part.mw
+		v.inertia += share * part.inertia
+		shape, response := cl.Shape, part.response
+		if over {
+			shape, response = cl.Down, part.down
+		}
+		if shape >= 0 && response > 0 {
+			v.response = append(v.response, lostResponse{shape, share * response})
 		}
 	}
-	return out
+	if v.mw <= 0 {
+		return out
+	}
+	return append(out, v)
 }
 
 // atLeast tells whether v is at least as bad as w at every instant. A lost response that

@@ -51,10 +51,10 @@ func (y *Year) Run(ctx context.Context, c *fleet.Case, opt Options, workers int,
 	bare.WithoutLimits = true
 	without := New(c, bare)
 	without.noReplay = true
-	var todo []int
+	var open []int
 	for i, done := range y.Solved {
 		if !done {
-			todo = append(todo, i)
+			open = append(open, i)
 		}
 	}
 	var next atomic.Int64
@@ -64,10 +64,10 @@ func (y *Year) Run(ctx context.Context, c *fleet.Case, opt Options, workers int,
 		wait.Go(func() {
 			for {
 				n := int(next.Add(1)) - 1
-				if n >= len(todo) || ctx.Err() != nil {
+				if n >= len(open) || ctx.Err() != nil {
 					return
 				}
-				i := todo[n]
+				i := open[n]
 				h := c.Hour(y.From+i, fleet.HourOptions{StartSpreadH: opt.StartSpreadH})
 				secure, err := with.Hour(ctx, h)
 				if err != nil {

@@ -10,8 +10,6 @@ import (
 	"gonum.org/v1/gonum/mat"
 	"gonum.org/v1/gonum/optimize"
 	"gonum.org/v1/gonum/stat/distuv"
-
-	"evenkeel/limits/dynamic"
 )
 
 // Record is a recorded frequency trace: seconds from some start, and Hz.
@@ -32,17 +30,16 @@ type Estimate struct {
 
 // Fit is what a record says about a system.
 type Fit struct {
-	NominalHz  float64
-	LoadMW     float64
-	LostMW     float64
-	StartS     float64 // instant of the loss in the record
-	OffsetHz   float64 // of the record before the loss
-	NoiseHz    float64 // standard deviation of the residual
-	Estimates  []Estimate
-	Used       *Record   // what was fitted
-	Model      []float64 // Hz, at the instants of Used
-	Residual   float64   // root of the mean square, Hz
-	EventsSeen int
+	NominalHz float64
+	LoadMW    float64
+	LostMW    float64
+	StartS    float64 // instant of the loss in the record
+	OffsetHz  float64 // of the record before the loss
+	NoiseHz   float64 // standard deviation of the residual
+	Estimates []Estimate
+	Used      *Record   // what was fitted
+	Model     []float64 // Hz, at the instants of Used
+	Residual  float64   // root of the mean square, Hz
 }
 
 // The parameters that are fitted, in this order. Positive ones are fitted as logarithms.
@@ -106,7 +103,7 @@ func Match(r *Record, nominalHz, loadMW, lostMW, afterS float64) (*Fit, error) {
 	if err != nil {
 		return nil, err
 	}
-	f := &Fit{NominalHz: nominalHz, LoadMW: loadMW, LostMW: lostMW, Used: use, EventsSeen: 1}
+	f := &Fit{NominalHz: nominalHz, LoadMW: loadMW, LostMW: lostMW, Used: use}
 	res := m.residuals(best)
 	f.Model = make([]float64, len(use.S))
 	ss := 0.0
@@ -495,27 +492,4 @@ func correlation(res []float64) float64 {
 		return 0
 	}
 	return min(max(a/b, 0), 0.95)
-}
-
-// Simulated is a record as a system of one droop would leave it, for tests and for trying the
-// fit out: see the closed-loop simulation.
-func Simulated(f0, loadMW, lostMW, inertia, damping, gain, lag, untilS, everyS float64) *Record {
-	m := &dynamic.Model{Kind: dynamic.Droop, DroopPct: 100 / f0, LagS: lag} // 1 MW/Hz a MW of rating
-	sys := &dynamic.System{NominalHz: f0, LoadMW: loadMW, DampingPctPerHz: 100 * damping / loadMW, InertiaMWs: inertia,
-		Units: []dynamic.Unit{{Name: "response", Model: m, N: 1, RatingMW: gain, UpMW: 1e9, DownMW: 1e9}}}
-	var s dynamic.Simulator
-	o := s.Run(sys, []dynamic.Loss{{MW: lostMW}}, dynamic.Options{SteadyByS: untilS, UntilS: untilS, TolHz: 1e-7, Record: true})
-	r := &Record{}
-	at := 0
-	for t := 0.0; t <= untilS; t += everyS {
-		for at+1 < len(o.Times)-1 && o.Times[at+1] <= t {
-			at++
-		}
-		x := o.Deviation[at]
-		if h := o.Times[at+1] - o.Times[at]; h > 0 {
-			x += (o.Deviation[at+1] - o.Deviation[at]) * (t - o.Times[at]) / h
-		}
-		r.S, r.Hz = append(r.S, t), append(r.Hz, f0-x)
-	}
-	return r
 }

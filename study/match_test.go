@@ -8,12 +8,14 @@ import (
 	"testing"
 
 	"gonum.org/v1/gonum/mat"
+
+	"evenkeel/limits/dynamic"
 )
 
 // noisy makes a record of a simulated event: quiet before, noise, gaps, an offset, a start that
 // is nobody's business.
 func noisy(rng *rand.Rand, every, noise float64, inertia, damping, gain, lag, lost float64) (*Record, float64) {
-	clean := Simulated(50, 5000, lost, inertia, damping, gain, lag, 40, every)
+	clean := simulated(50, 5000, lost, inertia, damping, gain, lag, 40, every)
 	lead := 15 + 5*rng.Float64()
 	offset := 0.02 * (rng.Float64() - 0.5)
 	r := &Record{}
@@ -172,4 +174,26 @@ func TestMatchRefusesContradictions(t *testing.T) {
 	if _, err := Match(r, 50, 5000, 200, 0); err == nil {
 		t.Error("milliseconds taken for seconds")
 	}
+}
+
+// simulated is a record as a system of one droop would leave it in the closed-loop simulation.
+func simulated(f0, loadMW, lostMW, inertia, damping, gain, lag, untilS, everyS float64) *Record {
+	m := &dynamic.Model{Kind: dynamic.Droop, DroopPct: 100 / f0, LagS: lag} // 1 MW/Hz a MW of rating
+	sys := &dynamic.System{NominalHz: f0, LoadMW: loadMW, DampingPctPerHz: 100 * damping / loadMW, InertiaMWs: inertia,
+		Units: []dynamic.Unit{{Name: "response", Model: m, N: 1, RatingMW: gain, UpMW: 1e9, DownMW: 1e9}}}
+	var s dynamic.Simulator
+	o := s.Run(sys, []dynamic.Loss{{MW: lostMW}}, dynamic.Options{SteadyByS: untilS, UntilS: untilS, TolHz: 1e-7, Record: true})
+	r := &Record{}
+	at := 0
+	for t := 0.0; t <= untilS; t += everyS {
+		for at+1 < len(o.Times)-1 && o.Times[at+1] <= t {
+			at++
+		}
+		x := o.Deviation[at]
+		if h := o.Times[at+1] - o.Times[at]; h > 0 {
+			x += (o.Deviation[at+1] - o.Deviation[at]) * (t - o.Times[at]) / h
+		}
+		r.S, r.Hz = append(r.S, t), append(r.Hz, f0-x)
+	}
+	return r
 }

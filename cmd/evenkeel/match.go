@@ -1,7 +1,6 @@
 package main
 
 import (
-	"errors"
 	"math"
 	"os"
 	"path/filepath"
@@ -58,9 +57,7 @@ func matchCommand() *cobra.Command {
 				return bad("%w", err)
 			}
 			fit, err := study.Match(rec, c.Limits.NominalHz, load, lost, after)
-			if errors.Is(err, study.ErrNoEvent) {
-				return bad("%s: %w", event, err)
-			} else if err != nil {
+			if err != nil {
 				return bad("%s: %w", event, err)
 			}
 			if out != "" {

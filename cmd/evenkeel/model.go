@@ -1,13 +1,14 @@
 package main
 
 import (
+	"io"
+	"path/filepath"
+
 	"github.com/spf13/cobra"
 
 	"evenkeel/fleet"
 	"evenkeel/report"
 	"evenkeel/solve"
-	"io"
-	"path/filepath"
 )
 
 func modelCommand() *cobra.Command {

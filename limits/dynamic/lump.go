@@ -1,7 +1,5 @@
 package dynamic
 
-import "math"
-
 // lump is all units of one model prepared for integration: rates instead of lags. Behind what
 // droop asks for, a chain of lags is linear, so units of any size and room share it. Rate
 // limits and synthetic inertia are not: their units share a lump only where they are alike.
@@ -215,5 +213,3 @@ func (l *lump) weight() float64 {
 	}
 	return 1
 }
-
-func isInf(x float64) bool { return math.IsInf(x, 0) }

@@ -98,7 +98,7 @@ func (s *Simulator) record() {
 func (s *Simulator) measure() {
 	o := &s.out
 	o.EndHz = s.y[0]
-	if isInf(s.y[0]) {
+	if math.IsInf(s.y[0], 0) {
 		o.NadirHz, o.RoCoFHzPerS, o.SteadyHz, o.InstantHzPerS = math.Inf(1), math.Inf(1), math.Inf(1), math.Inf(1)
 		if s.y[0] < 0 {
 			o.NadirHz, o.RoCoFHzPerS, o.SteadyHz = 0, 0, 0

@@ -14,10 +14,7 @@ type Test struct {
 }
 
 // At is the deviation below nominal after t seconds.
-func (q Test) At(t float64) float64 { return q.deviation(t) }
-
-// deviation is the test's deviation below nominal after t seconds.
-func (q Test) deviation(t float64) float64 {
+func (q Test) At(t float64) float64 {
 	if q.HzPerS > 0 {
 		return min(q.HzPerS*t, q.ToHz)
 	}
@@ -40,7 +37,7 @@ func (s *Simulator) Course(m *Model, q Test, untilS, everyS float64) []float64 {
 	if m.Kind == Synthetic {
 		u.SyntheticMWs = 50 / (2 * max(q.HzPerS, 1e-9))
 	}
-	return s.Deliver(&u, 50, q.deviation, untilS, everyS)
+	return s.Deliver(&u, 50, q.At, untilS, everyS)
 }
 
 // Deliver gives what one unit delivers while frequency follows a given course, as a share of
