@@ -16,7 +16,6 @@ import (
 
 const (
 	mostMends     = 8
-	mostRecorded  = 1    // failed losses that the rows are rebuilt from in one round
 	closedTolHz   = 1e-3 // the simulation's own error, see dynamic
 	closedTolStep = 2e-5
 	closedStill   = 2e-5 // Hz/s: less than a millihertz until the slowest dashpot has settled
@@ -49,12 +48,13 @@ func (s *Solver) proven(ctx context.Context, h *fleet.Hour, q *search, st *state
 			out.Closed.Mended = mends
 			return out, nil
 		}
-		failed := s.simulate(sim, q, st, &out)
-		if out.Above != nil && len(failed) == 0 { // the other side once this one holds
-			failed = append(failed, s.simulateAbove(sim, q, st, &out)...)
+		on := NewOnline(s.c, q.m.p.Hour, out.Dispatch, st.unserved)
+		failed := s.simulate(sim, on, q.m.p, st, &out)
+		if out.Above != nil && failed == nil { // the other side once this one holds
+			failed = s.simulateAbove(sim, on, q.m.p, &out)
 		}
 		out.Closed.Mended, out.Closed.MendedCost = mends, out.Cost-first
-		if len(failed) == 0 {
+		if failed == nil {
 			return out, nil
 		}
 		if mends == mostMends {
@@ -65,7 +65,7 @@ func (s *Solver) proven(ctx context.Context, h *fleet.Hour, q *search, st *state
 			}
 			return out, nil
 		}
-		shapes = s.mend(sim, q, st, shapes, failed, mends)
+		shapes = s.mend(sim, st, shapes, failed, mends)
 		p, r, err := s.search(ctx, h, shapes)
 		if err != nil {
 			return Hour{}, err
@@ -96,11 +96,9 @@ type failure struct {
 }
 
 // simulate runs every loss and fills in out.Closed: a small one can do more harm than a large one,
-// where response that it sets off goes again. It gives those that fail.
-func (s *Solver) simulate(sim *dynamic.Simulator, q *search, st *state, out *Hour) []failure {
-	p := q.m.p
-	on := NewOnline(s.c, p.Hour, out.Dispatch, st.unserved)
-	sys := &on.Sys
+// where response that it sets off goes again. It stops at the first that fails and gives it: what
+// the rows rebuilt from that one do not cure shows in the next round.
+func (s *Solver) simulate(sim *dynamic.Simulator, on *Online, p *formulate.Problem, st *state, out *Hour) *failure {
 	l := p.Limits
 	limit := [limits.Kinds]float64{l.MaxHzPerS, l.NadirHz, l.SteadyHz}
 	opt := s.closedOptions()
@@ -123,15 +121,10 @@ func (s *Solver) simulate(sim *dynamic.Simulator, q *search, st *state, out *Hou
 		c.severity = severity(o.RoCoFHzPerS, o.NadirHz, o.SteadyHz)
 		list = append(list, c)
 	}
-	// The worst come first: one that fails ends the round.
+	// The worst come first.
 	slices.SortStableFunc(list, func(a, b candidate) int { return cmp.Compare(b.severity, a.severity) })
-	var failed []failure
 	for _, c := range list {
-		if len(failed) == mostRecorded {
-			break // it tells the others' story too: what it misses shows in the next round
-		}
-		d := c.trip
-		o := sim.Run(sys, []dynamic.Loss{d}, opt)
+		o := sim.Run(&on.Sys, []dynamic.Loss{c.trip}, opt)
 		cl := &out.Closed
 		cl.Simulated++
 		cl.RoCoFHzPerS = max(cl.RoCoFHzPerS, o.RoCoFHzPerS)
@@ -140,24 +133,21 @@ func (s *Solver) simulate(sim *dynamic.Simulator, q *search, st *state, out *Hou
 			cl.NadirHz, cl.NadirS, cl.Loss = o.NadirHz, o.NadirS, c.loss.Name
 		}
 		cl.MarginHz = min(cl.MarginHz, l.NadirHz-o.NadirHz, l.SteadyHz-o.SteadyHz)
-		f := failure{loss: d, sys: sys, nadirS: o.NadirS, rocofS: o.RoCoFS,
+		f := failure{loss: c.trip, sys: &on.Sys, nadirS: o.NadirS, rocofS: o.RoCoFS,
 			early:  o.RoCoFHzPerS > limit[limits.RoCoF]+closedTolHz || o.NadirHz > limit[limits.Nadir]+closedTolHz,
 			steady: o.SteadyHz > limit[limits.Steady]+closedTolHz}
 		if f.early || f.steady {
-			failed = append(failed, f)
+			return &f
 		}
 	}
-	return failed
+	return nil
 }
 
-// simulateAbove runs every loss of load and export. It gives those that fail.
-func (s *Solver) simulateAbove(sim *dynamic.Simulator, q *search, st *state, out *Hour) []failure {
-	p := q.m.p
-	on := NewOnline(s.c, p.Hour, out.Dispatch, st.unserved)
+// simulateAbove does the same with the losses of load and export.
+func (s *Solver) simulateAbove(sim *dynamic.Simulator, on *Online, p *formulate.Problem, out *Hour) *failure {
 	l, a := p.Above, out.Above
 	opt := s.closedOptions()
 	opt.SteadyHz = l.SteadyHz
-	var failed []failure
 	for k := range p.OverLosses {
 		loss := &p.OverLosses[k]
 		d := s.trip(on, p, loss)
@@ -172,13 +162,10 @@ func (s *Solver) simulateAbove(sim *dynamic.Simulator, q *search, st *state, out
 			early:  o.RiseHzPerS > l.MaxHzPerS+closedTolHz || o.PeakHz > l.NadirHz+closedTolHz,
 			steady: o.SteadyOverHz > l.SteadyHz+closedTolHz}
 		if f.early || f.steady {
-			failed = append(failed, f)
-		}
-		if len(failed) == mostRecorded {
-			break
+			return &f
 		}
 	}
-	return failed
+	return nil
 }
 
 // trip is a loss of the hour as the simulation sees it.
@@ -205,22 +192,19 @@ const (
 	mendStep    = 0.01 // lower in each round than what was delivered, so that few rounds do
 )
 
-// mend lowers the shapes of the models to what was delivered in the failed simulations: up
+// mend lowers the shapes of the models to what was delivered in the simulation that failed: up
 // to the nadir as it came; after it no less than at the nadir, as droop only gives way where
 // frequency recovers; and within the steady band's time, where that fails, as it came.
-func (s *Solver) mend(sim *dynamic.Simulator, q *search, st *state, shapes []limits.Shape, failed []failure, mends int) []limits.Shape {
+func (s *Solver) mend(sim *dynamic.Simulator, st *state, shapes []limits.Shape, f *failure, mends int) []limits.Shape {
 	if shapes == nil {
 		for i := range s.c.Shapes {
 			shapes = append(shapes, s.c.Shapes[i].Shape)
 		}
 	}
 	l := s.c.Limits
-	until := 0.0 // what comes later stays as it is
-	for _, f := range failed {
-		until = max(until, f.nadirS+5, f.rocofS+l.WindowS+5)
-		if f.steady {
-			until = max(until, min(l.SteadyUntilS, l.SteadyByS+15))
-		}
+	until := max(f.nadirS+5, f.rocofS+l.WindowS+5) // what comes later stays as it is
+	if f.steady {
+		until = max(until, min(l.SteadyUntilS, l.SteadyByS+15))
 	}
 	n := int(until/mendSampleS) + 1
 	samples := make([][]float64, len(shapes))
@@ -236,69 +220,67 @@ func (s *Solver) mend(sim *dynamic.Simulator, q *search, st *state, shapes []lim
 	}
 	opt := s.closedOptions()
 	opt.Record, opt.UntilS = true, until
-	for _, f := range failed {
-		opt.EndS = until
-		if !f.steady { // what comes after the nadir is not looked at
-			opt.EndS = max(f.nadirS, f.rocofS+l.WindowS) + mendSampleS
+	opt.EndS = until
+	if !f.steady { // what comes after the nadir is not looked at
+		opt.EndS = max(f.nadirS, f.rocofS+l.WindowS) + mendSampleS
+	}
+	o := sim.Run(f.sys, []dynamic.Loss{f.loss}, opt)
+	gone := make([]float64, len(f.sys.Units))
+	for _, g := range f.loss.Units {
+		gone[g.Index] += g.Much
+	}
+	for i, m := range s.models {
+		if samples[i] == nil {
+			continue
 		}
-		o := sim.Run(f.sys, []dynamic.Loss{f.loss}, opt)
-		gone := make([]float64, len(f.sys.Units))
-		for _, g := range f.loss.Units {
-			gone[g.Index] += g.Much
-		}
-		for i, m := range s.models {
-			if samples[i] == nil {
-				continue
+		held := 0.0
+		delivered := make([]float64, len(o.Times))
+		for u := range f.sys.Units {
+			v := &f.sys.Units[u]
+			room, sign := v.UpMW, 1.0
+			if f.over {
+				room, sign = v.DownMW, -1
 			}
-			held := 0.0
-			delivered := make([]float64, len(o.Times))
-			for u := range f.sys.Units {
-				v := &f.sys.Units[u]
-				room, sign := v.UpMW, 1.0
-				if f.over {
-					room, sign = v.DownMW, -1
+			if v.Model == m && room > 0 {
+				held += (v.N - gone[u]) * room
+				for t := range delivered {
+					delivered[t] += sign * o.MW[u][t]
 				}
-				if v.Model == m && room > 0 {
-					held += (v.N - gone[u]) * room
-					for t := range delivered {
-						delivered[t] += sign * o.MW[u][t]
+			}
+		}
+		if held <= 1e-6 {
+			continue
+		}
+		at, atNadir := 0, math.Inf(1)
+		for j := range samples[i] {
+			t := float64(j) * mendSampleS
+			for at+1 < len(o.Times) && o.Times[at+1] <= t {
+				at++
+			}
+			share := delivered[at] / held
+			if at+1 < len(o.Times) && o.Times[at+1] > o.Times[at] {
+				share += (delivered[at+1] - delivered[at]) / held * (t - o.Times[at]) / (o.Times[at+1] - o.Times[at])
+			}
+			share *= 1 - mendStep*float64(mends+1) // so that every round changes something
+			least := math.Inf(1)
+			if f.early {
+				if t <= f.nadirS {
+					least, atNadir = share, share
+				} else {
+					least = max(share, atNadir)
+					if math.IsInf(atNadir, 1) {
+						least = share
+					}
+					if t > opt.EndS {
+						least = atNadir
 					}
 				}
 			}
-			if held <= 1e-6 {
-				continue
+			if f.steady && t >= l.SteadyByS {
+				least = min(least, share)
 			}
-			at, atNadir := 0, math.Inf(1)
-			for j := range samples[i] {
-				t := float64(j) * mendSampleS
-				for at+1 < len(o.Times) && o.Times[at+1] <= t {
-					at++
-				}
-				share := delivered[at] / held
-				if at+1 < len(o.Times) && o.Times[at+1] > o.Times[at] {
-					share += (delivered[at+1] - delivered[at]) / held * (t - o.Times[at]) / (o.Times[at+1] - o.Times[at])
-				}
-				share *= 1 - mendStep*float64(mends+1) // so that every round changes something
-				least := math.Inf(1)
-				if f.early {
-					if t <= f.nadirS {
-						least, atNadir = share, share
-					} else {
-						least = max(share, atNadir)
-						if math.IsInf(atNadir, 1) {
-							least = share
-						}
-						if t > opt.EndS {
-							least = atNadir
-						}
-					}
-				}
-				if f.steady && t >= l.SteadyByS {
-					least = min(least, share)
-				}
-				if least < samples[i][j] {
-					samples[i][j], changed[i] = least, true
-				}
+			if least < samples[i][j] {
+				samples[i][j], changed[i] = least, true
 			}
 		}
 	}
