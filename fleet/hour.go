@@ -10,6 +10,8 @@ type Hour struct {
 	DemandMW       float64
 	DampingMWPerHz float64 // at full demand
 	LoadInertiaMWs float64
+	// LeastInertiaMWs must be online, the load's own included, whatever the limits need; 0: none.
+	LeastInertiaMWs float64
 
 	Units  []Unit     // one a resource, same index as Case.Resources
 	Losses []HourLoss // every loss the hour must survive

@@ -134,6 +134,18 @@ func Build(c *fleet.Case, h *fleet.Hour) *Problem {
 	return p
 }
 
+// SteadyOnly lifts the limits of RoCoF and of the nadir, on both sides of nominal, far above
+// anything that could happen.
+func (p *Problem) SteadyOnly() {
+	const far = 1e6 // Hz, Hz/s
+	p.Limits.MaxHzPerS, p.Limits.NadirHz = far, far
+	if p.Above != nil {
+		above := *p.Above
+		above.MaxHzPerS, above.NadirHz = far, far
+		p.Above = &above
+	}
+}
+
 // above prepares the other side of nominal: load that is lost damps no more.
 func (p *Problem) above(c *fleet.Case, h *fleet.Hour) {
 	p.Above = c.Above

@@ -59,7 +59,7 @@ func (s *search) probe(n *node) float64 {
 		n.bound = math.Inf(1)
 		return s.cutoff()
 	case simplex.Optimal:
-		s.lp.DropSlack(1, 1)
+		s.lp.DropSlack(s.m.always(), 1)
 		n.basis = s.lp.Save()
 	}
 	n.bound = max(n.bound, s.lp.Objective())

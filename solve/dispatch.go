@@ -38,7 +38,7 @@ func (s *search) dispatch(counts []int, from *simplex.Basis, capped bool) {
 	}
 	s.load(s.fix, n)
 	if capped {
-		for _, r := range from.Rows()[1:] {
+		for _, r := range from.Rows()[s.m.always():] {
 			if loosen(r) == r {
 				s.fix.AddRow(r)
 			}
@@ -56,7 +56,7 @@ func (s *search) dispatch(counts []int, from *simplex.Basis, capped bool) {
 	if cost := s.fix.Objective(); cost < s.best {
 		s.best = cost
 		s.commit = append(s.commit[:0], counts...)
-		s.fix.DropSlack(1, 1)
+		s.fix.DropSlack(s.m.always(), 1)
 		s.basis = s.fix.Save()
 	}
 }
@@ -64,7 +64,7 @@ func (s *search) dispatch(counts []int, from *simplex.Basis, capped bool) {
 // loosen frees a row that holds in part of the search only.
 func loosen(r *simplex.Row) *simplex.Row {
 	tag, ok := r.Tag.(*rowTag)
-	if !ok || !tag.cap && tag.row.Loss != formulate.AnyLoss {
+	if !ok || tag.floor || !tag.cap && tag.row.Loss != formulate.AnyLoss {
 		return r
 	}
 	free := *r

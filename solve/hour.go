@@ -26,8 +26,6 @@ type Solver struct {
 	closed bool             // some resource has a dynamic model
 	models []*dynamic.Model // one a shape; nil: a promise
 	sims   sync.Pool        // of *dynamic.Simulator
-
-	noReplay bool // the mix is wanted for its cost alone
 }
 
 // New prepares the hours of a case.
@@ -70,7 +68,7 @@ func (s *Solver) Hour(ctx context.Context, h *fleet.Hour) (Hour, error) {
 		return Hour{}, err
 	}
 	out, st := s.finish(p, q, s.sys)
-	if !s.closed || s.noReplay || p.WithoutLimits {
+	if !s.closed || s.opt.RowsOnly || s.opt.SteadyOnly || p.WithoutLimits {
 		return out, nil
 	}
 	return s.proven(ctx, h, q, st, out)
@@ -83,7 +81,7 @@ func (s *Solver) finish(p *formulate.Problem, q *search, sys *replay.System) (Ho
 	if !p.WithoutLimits {
 		s.price(q, &st, &out)
 	}
-	if !s.noReplay {
+	if !s.opt.RowsOnly {
 		s.replay(sys, q, &st, &out)
 	}
 	out.Effort = Effort{Nodes: q.nodes, Pivots: q.lp.Pivots + q.fix.Pivots, Rows: len(q.sep.order)}
@@ -135,6 +133,7 @@ func (s *Solver) describe(q *search, st *state, excess float64) Hour {
 	for k := range out.Limits {
 		out.Limits[k].ShortMW = clip(st.short[k])
 	}
+	out.FloorShortMWs = clip(st.lack)
 	if p.Above != nil {
 		out.Above = &Above{DownPerMW: make([]float64, len(p.Shapes))}
 		for k := range out.Above.Limits {
@@ -169,6 +168,10 @@ func (s *Solver) price(q *search, st *state, out *Hour) {
 		tag, ok := r.Tag.(*rowTag)
 		if !ok {
 			out.Prices.EnergyPerMWh = y
+			continue
+		}
+		if tag.floor {
+			out.FloorPricePerMWs = max(y, 0)
 			continue
 		}
 		if tag.cap || y <= 1e-9 {
@@ -271,6 +274,9 @@ func (s *Solver) replay(sys *replay.System, q *search, st *state, out *Hour) {
 	}
 	if out.UnservedMW > 0 {
 		why = append(why, fmt.Sprintf("%.1f MW of load not served", out.UnservedMW))
+	}
+	if out.FloorShortMWs > 0 {
+		why = append(why, fmt.Sprintf("%.0f MW·s of the least inertia lacking", out.FloorShortMWs))
 	}
 	if out.ExcessMW > 0 {
 		why = append(why, fmt.Sprintf("%.1f MW of output above the load", out.ExcessMW))

@@ -22,6 +22,7 @@ type master struct {
 	short    [limits.Kinds]int
 	shortMW  float64           // most that a limit can be short
 	over     [limits.Kinds]int // shortfalls above nominal, where there are limits there
+	lack     int               // of the least inertia, where that is asked for
 
 	base [][]int32             // columns without a cap, one list a group
 	caps map[float64][][]int32 // columns under a cap
@@ -82,6 +83,9 @@ func newMaster(p *formulate.Problem) *master {
 				{}, {Cost: 2 * m.shortMW * p.ShortPerMW, R: 2 * m.shortMW}}})
 		}
 	}
+	if m.floored() {
+		m.addLack()
+	}
 	for _, g := range m.groups {
 		list := make([]int32, len(g.Cols))
 		for j := range list {
@@ -114,12 +118,15 @@ func (m *master) possibleOver(k int) float64 {
 	return mw
 }
 
-// rowShapes is the length of a row's R: the shapes, unserved load, shortfalls, and the same of
-// the other side of nominal.
+// rowShapes is the length of a row's R: the shapes, unserved load, shortfalls, the same of the
+// other side of nominal, and what is lacking of the least inertia.
 func (m *master) rowShapes() int {
 	n := len(m.p.Shapes) + 1 + limits.Kinds
 	if m.p.Above != nil {
 		n += len(m.p.Shapes) + limits.Kinds
+	}
+	if m.floored() {
+		n++
 	}
 	return n
 }
@@ -199,6 +206,7 @@ type rowTag struct {
 	row     formulate.Row
 	average int  // units that a single loss is averaged over
 	cap     bool // not a limit: the cap of a loss on several resources
+	floor   bool // not a limit: the least inertia
 }
 
 // roundingShare of the largest possible loss is added to every frequency row, so that

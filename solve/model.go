@@ -59,6 +59,9 @@ func (s *Solver) search(ctx context.Context, h *fleet.Hour, shapes []limits.Shap
 		p.Shapes = shapes
 	}
 	p.WithoutLimits = s.opt.WithoutLimits
+	if s.opt.SteadyOnly {
+		p.SteadyOnly()
+	}
 	q, met, err := s.searchOne(ctx, p)
 	if err != nil || met || p.DampingA0 == 0 || p.WithoutLimits {
 		return p, q, err

@@ -35,12 +35,14 @@ type Hour struct {
 	CurtailedMW float64
 	CO2T        float64
 
-	InertiaMWs     float64 // online, synthetic and the load's own included
-	WorstLoss      string  // the loss with the deepest replayed nadir
-	WorstLossMW    float64
-	InertiaLeftMWs float64 // after the worst loss
-	PrimaryMW      float64 // response held with shapes slower than FastS
-	FastMW         float64 // response held with shapes fully out within FastS
+	InertiaMWs float64 // online, synthetic and the load's own included
+	// Where fleet.Hour.LeastInertiaMWs asks for a floor: what is lacking of it, and its price.
+	FloorShortMWs, FloorPricePerMWs float64
+	WorstLoss                       string // the loss with the deepest replayed nadir
+	WorstLossMW                     float64
+	InertiaLeftMWs                  float64 // after the worst loss
+	PrimaryMW                       float64 // response held with shapes slower than FastS
+	FastMW                          float64 // response held with shapes fully out within FastS
 
 	// Replayed values, each the worst over all losses.
 	RoCoFHzPerS float64

@@ -16,6 +16,10 @@ type Options struct {
 	StartSpreadH float64
 	// WithoutLimits dispatches without frequency limits.
 	WithoutLimits bool
+	// SteadyOnly asks for the steady-state limits alone, not for RoCoF and the nadir.
+	SteadyOnly bool
+	// RowsOnly takes the rows' word for a mix: it is neither replayed nor simulated.
+	RowsOnly bool
 	// NodeLimit bounds the relaxations of one hour; 0: DefaultNodeLimit. An hour that
 	// reaches it is reported with the gap it has.
 	NodeLimit int
@@ -171,6 +175,9 @@ func (s *search) load(lp *simplex.LP, n *node) {
 		lp.Reset()
 		lp.AddRow(s.m.balance())
 		lp.Merit()
+		if s.m.floored() {
+			lp.AddRow(s.m.floorRow())
+		}
 	} else {
 		lp.Load(n.basis)
 	}
@@ -234,7 +241,7 @@ func (s *search) expand(n *node) {
 		return
 	}
 	n.bound = max(n.bound, obj)
-	s.lp.DropSlack(1, 1)
+	s.lp.DropSlack(s.m.always(), 1)
 	n.basis = s.lp.Save()
 	units := s.units()
 	s.m.measure(s.lp, &s.whole) // rounding measures its own solutions

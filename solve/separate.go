@@ -122,7 +122,7 @@ func has(lp *simplex.LP, v violation) bool {
 	const sameS = 1e-9
 	for _, r := range lp.Rows() {
 		tag, ok := r.Tag.(*rowTag)
-		if !ok || tag.cap || tag.row.Loss != v.lost.loss || tag.row.Over != v.lost.over || tag.average != v.lost.average {
+		if !ok || tag.cap || tag.floor || tag.row.Loss != v.lost.loss || tag.row.Over != v.lost.over || tag.average != v.lost.average {
 			continue
 		}
 		a, b := tag.row.At, v.at

@@ -17,6 +17,7 @@ type state struct {
 	unserved float64
 	short    [limits.Kinds]float64
 	over     [limits.Kinds]float64 // short above nominal
+	lack     float64               // MW·s lacking of the least inertia
 	class    []part                // all units of each class
 
 	replayed []replay.Outcome // one a loss, once replayed
@@ -63,6 +64,9 @@ func (m *master) measure(lp *simplex.LP, st *state) {
 	st.unserved = lp.Share(m.unserved, 1) * m.groups[m.sets[m.unserved]].Cols[1].P
 	for k, s := range m.short {
 		st.short[k] = lp.Share(s, 1) * m.groups[m.sets[s]].Cols[1].R
+	}
+	if m.floored() {
+		st.lack = lp.Share(m.lack, 1) * m.groups[m.sets[m.lack]].Cols[1].R
 	}
 	if m.p.Above != nil {
 		for k, s := range m.over {

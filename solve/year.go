@@ -48,9 +48,8 @@ func (y *Year) Done() int {
 func (y *Year) Run(ctx context.Context, c *fleet.Case, opt Options, workers int, progress func()) error {
 	with := New(c, opt)
 	bare := opt
-	bare.WithoutLimits = true
+	bare.WithoutLimits, bare.RowsOnly = true, true
 	without := New(c, bare)
-	without.noReplay = true
 	var open []int
 	for i, done := range y.Solved {
 		if !done {

@@ -11,9 +11,7 @@ import (
 	"strings"
 	"time"
 
-	"github.com/schollz/progressbar/v3"
 	"github.com/spf13/cobra"
-	"golang.org/x/term"
 
 	"evenkeel/fleet"
 	"evenkeel/report"
@@ -98,7 +96,7 @@ func mix(cmd *cobra.Command, path string, f mixFlags) error {
 	if err := report.Write(f.out, c, y.Hours, without, o); err != nil {
 		return err
 	}
-	if err := report.WriteAbout(f.out, about(path, f, started)); err != nil {
+	if err := report.WriteAbout(f.out, about(path, f.workers, f.resume, started)); err != nil {
 		return err
 	}
 	if err := report.DropProgress(f.out); err != nil {
@@ -191,32 +189,19 @@ var afterHour func()
 
 func solveYear(ctx context.Context, c *fleet.Case, p *report.Progress, f mixFlags) error {
 	y := p.Year
-	step := afterHour
-	if !f.quiet && term.IsTerminal(int(os.Stderr.Fd())) {
-		bar := progressbar.NewOptions(len(y.Solved),
-			progressbar.OptionSetWriter(os.Stderr), progressbar.OptionSetDescription("hours"),
-			progressbar.OptionShowCount(), progressbar.OptionThrottle(100*time.Millisecond),
-			progressbar.OptionClearOnFinish(), progressbar.OptionSetPredictTime(true))
-		_ = bar.Set(y.Done())
-		step = func() {
-			_ = bar.Add(1)
-			if afterHour != nil {
-				afterHour()
-			}
-		}
-		defer func() { _ = bar.Finish() }()
-	}
+	step, finish := steps(len(y.Solved), y.Done(), "hours", f.quiet)
+	defer finish()
 	return y.Run(ctx, c, p.Options, f.workers, step)
 }
 
-func about(path string, f mixFlags, started time.Time) report.About {
+func about(path string, workers int, resumed bool, started time.Time) report.About {
 	version := "unknown"
 	if info, ok := debug.ReadBuildInfo(); ok {
 		version = info.Main.Version
 	}
 	return report.About{
 		Program: "evenkeel", Version: version, Go: runtime.Version(), OS: runtime.GOOS, Arch: runtime.GOARCH,
-		CPUs: runtime.NumCPU(), Workers: f.workers, Command: append([]string{"evenkeel"}, os.Args[1:]...), CasePath: path,
-		Started: started.UTC(), RunS: time.Since(started).Seconds(), Resumed: f.resume,
+		CPUs: runtime.NumCPU(), Workers: workers, Command: append([]string{"evenkeel"}, os.Args[1:]...), CasePath: path,
+		Started: started.UTC(), RunS: time.Since(started).Seconds(), Resumed: resumed,
 	}
 }
