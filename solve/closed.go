@@ -11,7 +11,6 @@ import (
 	"evenkeel/formulate"
 	"evenkeel/limits"
 	"evenkeel/limits/dynamic"
-	"evenkeel/limits/replay"
 )
 
 const (
@@ -37,25 +36,24 @@ func (s *Solver) prepareClosed() {
 
 // proven simulates a mix in closed loop. Where it leaves the corridor the rows of the hour are
 // rebuilt from what was delivered and the hour is solved again, until it holds.
-func (s *Solver) proven(ctx context.Context, h *fleet.Hour, q *search, st *state, out Hour) (Hour, error) {
+func (s *Solver) proven(ctx context.Context, h *fleet.Hour, near []*Trail, t *Trail, q *search, st *state, out Hour) (Hour, *search, error) {
 	sim := s.sims.Get().(*dynamic.Simulator)
 	defer s.sims.Put(sim)
-	var shapes []limits.Shape
 	first := out.Cost
 	effort := out.Effort
 	for mends := 0; ; mends++ {
 		if out.Status == Short { // nothing to prove
 			out.Closed.Mended = mends
-			return out, nil
+			return out, q, nil
 		}
 		on := NewOnline(s.c, q.m.p.Hour, out.Dispatch, st.unserved)
-		failed := s.simulate(sim, on, q.m.p, st, &out)
+		failed := s.simulate(sim, on, q.m.p, near, t, st, &out)
 		if out.Above != nil && failed == nil { // the other side once this one holds
 			failed = s.simulateAbove(sim, on, q.m.p, &out)
 		}
 		out.Closed.Mended, out.Closed.MendedCost = mends, out.Cost-first
 		if failed == nil {
-			return out, nil
+			return out, q, nil
 		}
 		if mends == mostMends {
 			out.Status = Short
@@ -63,20 +61,15 @@ func (s *Solver) proven(ctx context.Context, h *fleet.Hour, q *search, st *state
 			if a := out.Above; a != nil {
 				out.Why += fmt.Sprintf("; upwards %.3f Hz/s, peak %.3f Hz, steady %.3f Hz", a.ClosedRoCoFHzPerS, a.ClosedPeakHz, a.ClosedSteadyHz)
 			}
-			return out, nil
+			return out, q, nil
 		}
-		shapes = s.mend(sim, st, shapes, failed, mends)
-		p, r, err := s.search(ctx, h, shapes)
+		t.shapes = s.mend(sim, st, t.shapes, failed, mends)
+		p, r, err := s.search(ctx, h, t.shapes, near)
 		if err != nil {
-			return Hour{}, err
+			return Hour{}, nil, err
 		}
-		var knots [][]replay.Knot
-		for _, sh := range shapes {
-			knots = append(knots, knotsOf(sh))
-		}
-		sys := s.system(knots)
 		q = r
-		out, st = s.finish(p, q, sys)
+		out, st = s.finish(p, q, s.systemOf(t.shapes))
 		out.Effort.Nodes += effort.Nodes
 		out.Effort.Pivots += effort.Pivots
 		out.Effort.Rows += effort.Rows
@@ -98,7 +91,7 @@ type failure struct {
 // simulate runs every loss and fills in out.Closed: a small one can do more harm than a large one,
 // where response that it sets off goes again. It stops at the first that fails and gives it: what
 // the rows rebuilt from that one do not cure shows in the next round.
-func (s *Solver) simulate(sim *dynamic.Simulator, on *Online, p *formulate.Problem, st *state, out *Hour) *failure {
+func (s *Solver) simulate(sim *dynamic.Simulator, on *Online, p *formulate.Problem, near []*Trail, t *Trail, st *state, out *Hour) *failure {
 	l := p.Limits
 	limit := [limits.Kinds]float64{l.MaxHzPerS, l.NadirHz, l.SteadyHz}
 	opt := s.closedOptions()
@@ -106,19 +99,25 @@ func (s *Solver) simulate(sim *dynamic.Simulator, on *Online, p *formulate.Probl
 	severity := func(rocof, nadir, steady float64) float64 {
 		return max(rocof/limit[limits.RoCoF], nadir/limit[limits.Nadir], steady/limit[limits.Steady])
 	}
+	t.calm = make([]bool, len(p.Losses))
 	type candidate struct {
+		index    int
 		loss     *formulate.Loss
 		trip     dynamic.Loss
 		severity float64 // of the open-loop replay, by the limit nearest to it
 	}
 	var list []candidate
 	for k := range p.Losses {
-		c := candidate{loss: &p.Losses[k], trip: s.trip(on, p, &p.Losses[k])}
+		c := candidate{index: k, loss: &p.Losses[k], trip: s.trip(on, p, &p.Losses[k])}
 		if c.trip.MW <= 0 {
 			continue
 		}
 		o := st.replayed[k]
 		c.severity = severity(o.RoCoFHzPerS, o.NadirHz, o.SteadyHz)
+		if c.severity < calmShare && calmNear(near, k, len(p.Losses)) {
+			t.calm[k] = true
+			continue
+		}
 		list = append(list, c)
 	}
 	// The worst come first.
@@ -129,6 +128,7 @@ func (s *Solver) simulate(sim *dynamic.Simulator, on *Online, p *formulate.Probl
 		cl.Simulated++
 		cl.RoCoFHzPerS = max(cl.RoCoFHzPerS, o.RoCoFHzPerS)
 		cl.SteadyHz = max(cl.SteadyHz, o.SteadyHz)
+		t.calm[c.index] = severity(o.RoCoFHzPerS, o.NadirHz, o.SteadyHz) < calmShare
 		if o.NadirHz > cl.NadirHz {
 			cl.NadirHz, cl.NadirS, cl.Loss = o.NadirHz, o.NadirS, c.loss.Name
 		}
