@@ -161,12 +161,27 @@ func (r *reader) firstShape(g *section, m *NamedModel) (limits.Shape, bool) {
 		g.fault("level_hz", num(m.Model.LevelHz), fmt.Sprintf("at most the %s Hz to which its qualification goes", num(m.Test.ToHz)))
 		return limits.Shape{}, false
 	}
+	s, err := m.triggered()
+	return s, err == nil
+}
+
+// triggered is the shape of a triggered response in its qualification.
+func (m *NamedModel) triggered() (limits.Shape, error) {
 	c := m.Model.Course
 	if m.Test.HzPerS > 0 {
 		c.DelayS += m.Model.LevelHz / m.Test.HzPerS
 	}
-	s, err := c.Shape()
-	return s, err == nil
+	return c.Shape()
+}
+
+// delivered is the shape of a governor model: what a unit of a rating that can hold so much
+// delivers in the qualification, and how much of it there is at its end.
+func (m *NamedModel) delivered(sim *dynamic.Simulator, l limits.Limits, ratingMW, mostMW float64) (s limits.Shape, end float64, err error) {
+	until := min(max(l.SteadyUntilS, limits.LeastHorizonS), 120)
+	u := dynamic.Unit{Model: m.Model, N: 1, RatingMW: ratingMW, UpMW: mostMW}
+	share := sim.Deliver(&u, l.NominalHz, m.Test.At, until, sampleS)
+	s, err = dynamic.ShapeBelow(share, sampleS, shapeWithin)
+	return s, share[len(share)-1], err
 }
 
 const (
@@ -208,15 +223,12 @@ func (r *reader) qualify() {
 		if who < 0 || !(most > 0) {
 			continue
 		}
-		until := min(max(r.c.Limits.SteadyUntilS, limits.LeastHorizonS), 120)
-		u := dynamic.Unit{Model: m.Model, N: 1, RatingMW: rating, UpMW: most}
-		share := sim.Deliver(&u, r.c.Limits.NominalHz, m.Test.At, until, sampleS)
-		s, err := dynamic.ShapeBelow(share, sampleS, shapeWithin)
+		s, end, err := m.delivered(&sim, r.c.Limits, rating, most)
 		if err != nil {
 			r.fault(r.shapeInputs[m.Shape].section.line, r.shapeInputs[m.Shape].section.path, "a model that delivers nothing in its qualification", "some response before it ends ("+err.Error()+")")
 			continue
 		}
-		if end := share[len(share)-1]; end < 0.98 {
+		if end < 0.98 {
 			r.inputs[who].section.warn("response", fmt.Sprintf("a cap of which %s delivers %.0f %% in its qualification", m.Name, 100*end), fmt.Sprintf("a cap that its droop asks for at %s Hz, or a lower one", num(m.Test.ToHz)))
 		}
 		r.c.Shapes[m.Shape].Shape = s
