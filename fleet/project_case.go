@@ -70,7 +70,8 @@ func (p *Project) ResponseMW(c *Case, d Design) (float64, error) {
 	if err != nil {
 		return 0, err
 	}
-	return min(d.MW, d.EnergyMWh/e.TotalMWh), nil
+	const micro = 1e6 // a millionth of a MW is rounding: the same response is the same number
+	return math.Round(min(d.MW, d.EnergyMWh/e.TotalMWh)*micro) / micro, nil
 }
 
 // Resource is the index, in a case that holds the project, of the resource that carries it.

@@ -87,6 +87,7 @@ func root() *cobra.Command {
 		return bad("%w; see 'evenkeel %s --help'", err, c.Name())
 	})
 	cmd.AddCommand(mixCommand(), vetCommand(), modelCommand(), tripCommand(), matchCommand(), inventCommand())
+	cmd.AddCommand(sizeCommand())
 	return cmd
 }
 

@@ -1,0 +1,244 @@
+package report
+
+import (
+	"fmt"
+	"io"
+	"math"
+	"strings"
+
+	"evenkeel/fleet"
+	"evenkeel/study/size"
+)
+
+// round prints a size or an energy for people: two figures, or whole numbers.
+func round(v float64) string {
+	if v <= 0 {
+		return "0"
+	}
+	return grouped(v, max(0, 1-int(math.Floor(math.Log10(v)))))
+}
+
+// conditions say what a study looked at, in a few words.
+func conditions(s *size.Study) string {
+	if n, all := len(s.Hours), s.Plan.Case.Hours(); n < all {
+		return fmt.Sprintf("%s of %s, counted up to a year", count(n), hoursOf(all))
+	}
+	return hoursOf(len(s.Hours))
+}
+
+// designWords name a design.
+func designWords(s *size.Study, r *size.Result) string {
+	p := s.Plan.Project
+	text := plain(r.MW) + " " + p.Kind.SizeUnit()
+	if p.Kind.Stores() {
+		text += " / " + round(r.EnergyMWh) + " MWh"
+	}
+	if p.Kind != fleet.CondenserProject && r.ActivationS > 0 {
+		text += ", out within " + plain(r.ActivationS) + " s"
+	}
+	return text
+}
+
+// SizeText writes what a developer could paste into a mail, a decision at its end.
+func SizeText(w io.Writer, s *size.Study, gap float64) error {
+	p := &page{c: s.Plan.Case}
+	project := s.Plan.Project
+	p.text(fmt.Sprintf("%s (%s) on %s", project.Name, strings.ReplaceAll(project.Kind.String(), "_", " "), s.Plan.Case.Name), "")
+	sizeLooked(p, s, gap)
+	sizeTable(p, s)
+	sizeStops(p, s)
+	sizeEnergy(p, s)
+	sizeUse(p, s)
+	sizeSwings(p, s)
+	sizeDecision(p, s)
+	p.line("")
+	p.text("Hours are solved one by one; the project's costs are those of its file. Prices are marginal, the commitment held, so a "+
+		"project that spares whole machines saves more than it is paid.", "")
+	p.text(Caution, "")
+	_, err := w.Write(p.out.Bytes())
+	return err
+}
+
+func sizeLooked(p *page, s *size.Study, gap float64) {
+	c := s.Plan.Case
+	first, last := c.Times[s.Hours[0]], c.Times[s.Hours[len(s.Hours)-1]]
+	p.line("%s, %s to %s UTC", conditions(s), minute(first), minute(last))
+	best := &s.Results[s.Best[size.System]]
+	p.text(fmt.Sprintf("%s in %s; gap %s %%. The saving at %s is known to lie between %s and %s %s a year.", plural(len(s.Plan.Points), "design"), plural(s.Plan.Cases(), "case"),
+		plain(100*gap), designWords(s, best), amount(best.Year.SavingAtLeast), amount(best.Year.SavingAtMost), c.Currency), "")
+	short := 0.0
+	for i := range s.Results {
+		short = max(short, s.Results[i].Year.ShortH)
+	}
+	if bare := s.Years[0][0].ShortH; bare > 0 || short > 0 {
+		p.text(fmt.Sprintf("SHORT: %s hours a year without it, at most %s with it; what it saves and earns in them is at the prices set on shortfalls.", count(int(math.Round(bare))), count(int(math.Round(short)))), "")
+	}
+}
+
+func plural(n int, what string) string {
+	if n == 1 {
+		return "1 " + what
+	}
+	return count(n) + " " + what + "s"
+}
+
+// thousands prints money in thousands.
+func thousands(v float64) string { return grouped(v/1000, 0) }
+
+func sizeTable(p *page, s *size.Study) {
+	pace := bestPace(s)
+	unit := s.Plan.Project.Kind.SizeUnit()
+	title := "By size, with the energy that is best for the owner"
+	if !s.Plan.Project.Kind.Stores() {
+		title = "By size"
+	}
+	if s.Plan.Project.Kind != fleet.CondenserProject && pace.ActivationS > 0 {
+		title += ", out within " + plain(pace.ActivationS) + " s"
+	}
+	p.section(title + fmt.Sprintf(" (thousand %s a year)", s.Plan.Case.Currency))
+	p.line("%s%s%s%s%s%s%s%s", padLeft(unit, 9), padLeft("MWh", 9), padLeft("costs", 9), padLeft("saves", 10), padLeft("net", 10), padLeft("earns", 10), padLeft("net", 10), padLeft("as taker", 11))
+	p.line("%s%s%s%s%s%s%s%s", "", padLeft("", 18), padLeft("", 9), padLeft("system", 10), padLeft("system", 10), padLeft("owner", 10), padLeft("owner", 10), padLeft("owner", 11))
+	for _, k := range pace.Curve[size.Owner] {
+		r := &s.Results[k]
+		mwh := ""
+		if s.Plan.Project.Kind.Stores() {
+			mwh = round(r.EnergyMWh)
+		}
+		p.line("%s%s%s%s%s%s%s%s", padLeft(plain(r.MW), 9), padLeft(mwh, 9), padLeft(thousands(r.Cost), 9), padLeft(thousands(r.Value[size.System]), 10), padLeft(thousands(r.Net[size.System]), 10),
+			padLeft(thousands(r.Value[size.Owner]), 10), padLeft(thousands(r.Net[size.Owner]), 10), padLeft(thousands(r.TakerNet), 11))
+	}
+	p.text("saves: the system's cost without it less that with it, its own cost of holding counted in. earns: what it holds at the hour's prices with itself in the "+
+		"market, less its own cost. as taker: net, were prices those without it.", "  ")
+}
+
+func sizeStops(p *page, s *size.Study) {
+	unit := s.Plan.Project.Kind.SizeUnit()
+	p.section("Where the next " + unit + " stops paying")
+	for i := range s.Paces {
+		pace := &s.Paces[i]
+		name := "  any"
+		if s.Plan.Project.Paced() {
+			name = "  out in " + plain(pace.ActivationS) + " s"
+		} else if len(s.Paces) == 1 {
+			name = "  size"
+		}
+		var words []string
+		for side := range size.Sides {
+			best := math.Inf(-1)
+			for _, k := range pace.Curve[side] {
+				best = max(best, s.Results[k].Net[side])
+			}
+			words = append(words, fmt.Sprintf("%s %s (net %s at best)", sideNames[side], stopWords(pace.Stop[side], unit), amount(math.Round(best))))
+		}
+		p.fact(name, strings.Join(words, "; "))
+	}
+}
+
+func stopWords(stop size.Stop, unit string) string {
+	switch {
+	case stop.Beyond:
+		return "beyond the " + plain(stop.MW) + " " + unit + " tried"
+	case stop.MW == 0:
+		return "none pays"
+	}
+	return "about " + round(stop.MW) + " " + unit
+}
+
+func sizeEnergy(p *page, s *size.Study) {
+	project := s.Plan.Project
+	if !project.Kind.Stores() {
+		return
+	}
+	pace := bestPace(s)
+	e := pace.Energy
+	p.section("Energy for each MW held")
+	p.fact("  in all", fmt.Sprintf("%s MWh", fixed(e.TotalMWh, 3)))
+	p.fact("  hold", fmt.Sprintf("%s MWh: %s s at full power, %s, %s %% there and back", fixed(e.EventsMWh, 3), plain(math.Round(e.HoldS*10)/10), plural(project.Events, "event"), plain(project.EfficiencyPct)))
+	charge := fmt.Sprintf("charged again after %s min at %s %% of its power", fixed(e.RechargeS/60, 0), plain(100*project.RechargeShare))
+	if e.RechargeMWh > 0 {
+		p.fact("  recovery", fmt.Sprintf("%s MWh: it is %s and must be ready after %s min", fixed(e.RechargeMWh, 3), charge, plain(math.Round(project.ReadyAgainS/6)/10)))
+	} else {
+		p.fact("  recovery", "none: it is "+charge+", before it must be ready")
+	}
+	if e.DownMWh > 0 {
+		p.fact("  downwards", fmt.Sprintf("%s MWh of room for what comes in", fixed(e.DownMWh, 3)))
+	}
+	r := &s.Results[s.Best[size.Owner]]
+	p.fact("  best energy", fmt.Sprintf("%s MWh for %s MW, %s times what all of its MW need", round(r.EnergyMWh), plain(r.MW), plain(math.Round(100*r.EnergyMWh/(r.MW*r.NeedMWhPerMW))/100)))
+}
+
+func sizeUse(p *page, s *size.Study) {
+	r := &s.Results[s.Best[size.Owner]]
+	y := r.Year
+	paid := y.Paid[s.Rule]
+	p.section("In use: " + designWords(s, r))
+	p.fact("  needed", fmt.Sprintf("%s h a year paid more than its own cost; in %s h it is sure to save; utilisation %s %%", grouped(y.PaidH[s.Rule], 0), grouped(y.SureH, 0), fixed(100*r.Utilisation, 0)))
+	var parts []string
+	for _, part := range []struct {
+		name string
+		v    float64
+	}{{"response", paid.Response}, {"response downwards", paid.Down}, {"inertia", paid.Inertia}, {"energy drawn", paid.Energy}, {"own cost", -paid.Own}} {
+		if part.v != 0 {
+			parts = append(parts, part.name+" "+amount(math.Round(part.v)))
+		}
+	}
+	p.fact("  income", strings.Join(parts, ", ")+" "+s.Plan.Case.Currency+" a year")
+	p.fact("  as price taker", fmt.Sprintf("%s a year: its own effect on prices takes %s %% of that", amount(math.Round(y.Taker[s.Rule])), fixed(100*(1-paid.Net()/y.Taker[s.Rule]), 0)))
+}
+
+func sizeSwings(p *page, s *size.Study) {
+	r := &s.Results[s.Best[size.Owner]]
+	swings := s.Sensitivity(r)
+	const listed = 3
+	p.section(fmt.Sprintf("What matters most (each by ±%.0f %%; the owner's net of %s)", 100*size.SwingShare, designWords(s, r)))
+	for i := range swings[:min(listed, len(swings))] {
+		w := &swings[i]
+		p.line("  %s %s to %s", padRight(w.Input, 24), padLeft(amount(math.Round(w.NetLow[size.Owner])), 12), padLeft(amount(math.Round(w.NetHigh[size.Owner])), 12))
+	}
+}
+
+func sizeDecision(p *page, s *size.Study) {
+	project := s.Plan.Project
+	unit := project.Kind.SizeUnit()
+	r, sys := &s.Results[s.Best[size.Owner]], &s.Results[s.Best[size.System]]
+	pace := s.Pace(r)
+	p.section("Decision")
+	money := func(v float64) string { return amount(math.Round(v)) + " " + s.Plan.Case.Currency }
+	if !s.Pays(size.Owner) {
+		p.text(fmt.Sprintf("Do not build on these prices: no size tried pays its owner. The least bad, %s, nets %s a year; it would pay with a capital cost of %s per %s.",
+			designWords(s, r), money(r.Net[size.Owner]), money(r.BreakEven[size.Owner]), unit), "  ")
+	} else {
+		what := "Build about " + stopSize(pace.Stop[size.Owner], r, unit)
+		if project.Kind.Stores() {
+			what += " / " + round(stopMW(pace.Stop[size.Owner], r)*r.HoursOfEnergy) + " MWh"
+		}
+		if project.Kind != fleet.CondenserProject && r.ActivationS > 0 {
+			what += ", out within " + plain(r.ActivationS) + " s"
+		}
+		p.text(fmt.Sprintf("%s: at %s the owner nets %s a year on a capital of %s, and breaks even at %s per %s (asked: %s).", what,
+			designWords(s, r), money(r.Net[size.Owner]), money(size.Capital(project.Money, r.Design)), money(r.BreakEven[size.Owner]), unit, money(project.Money.CapitalPerMW)), "  ")
+	}
+	switch {
+	case !s.Pays(size.System):
+		p.text("For the system it does not pay at any size tried.", "  ")
+	case s.Pace(sys).Stop[size.System].Beyond:
+		p.text(fmt.Sprintf("For the system more pays still at the largest size tried: %s nets %s a year.", designWords(s, sys), money(sys.Net[size.System])), "  ")
+	default:
+		p.text(fmt.Sprintf("For the system about %s %s would be best: %s nets it %s a year.", round(s.Pace(sys).Stop[size.System].MW), unit, designWords(s, sys), money(sys.Net[size.System])), "  ")
+	}
+}
+
+func stopMW(stop size.Stop, r *size.Result) float64 {
+	if stop.MW > 0 {
+		return stop.MW
+	}
+	return r.MW
+}
+
+func stopSize(stop size.Stop, r *size.Result, unit string) string {
+	text := round(stopMW(stop, r)) + " " + unit
+	if stop.Beyond {
+		text += " or more"
+	}
+	return text
+}

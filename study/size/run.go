@@ -1,0 +1,174 @@
+package size
+
+import (
+	"context"
+	"math"
+
+	"evenkeel/fleet"
+	"evenkeel/formulate"
+	"evenkeel/solve"
+	"evenkeel/study/sweep"
+)
+
+// Rung is what one hour on one rung comes to: currency per hour, MW and MW·s.
+type Rung struct {
+	Cost, Bound                float64
+	Short                      bool
+	HeldMW, DownMW, InertiaMWs float64
+	OnShare                    float64 // of a condenser's machines
+	Paid                       [Rules]Income
+	// Taker is what the same project earns, its own cost paid, by its best answer to the prices of
+	// the rung with nothing built.
+	Taker [Rules]float64
+}
+
+// Income is what the project is paid in an hour or a year, by service, and its own cost of it.
+type Income struct {
+	Response, Down, Inertia float64
+	Energy                  float64 // of a condenser's losses, below 0
+	Own                     float64
+}
+
+// Net is what is left of the income.
+func (i Income) Net() float64 { return i.Response + i.Down + i.Inertia + i.Energy - i.Own }
+
+func (i *Income) add(o Income, times float64) {
+	i.Response += times * o.Response
+	i.Down += times * o.Down
+	i.Inertia += times * o.Inertia
+	i.Energy += times * o.Energy
+	i.Own += times * o.Own
+}
+
+// Rule is a rule by which prices come about.
+type Rule int
+
+// The rules.
+const (
+	Marginal Rule = iota // duals of the dispatch, the commitment held
+	Rules         = 1
+)
+
+func (r Rule) String() string { return [...]string{"marginal"}[r] }
+
+// prices are what an hour pays by one rule.
+type prices struct {
+	energy, inertia float64
+	response, down  []float64 // one a shape
+}
+
+func pricesOf(h *solve.Hour) [Rules]prices {
+	p := prices{energy: h.Prices.EnergyPerMWh, inertia: h.Prices.InertiaPerMWs, response: h.Prices.ResponsePerMW}
+	if h.Above != nil {
+		p.down = h.Above.DownPerMW
+	}
+	return [Rules]prices{p}
+}
+
+// at is a price of a list that may be empty.
+func at(list []float64, i int) float64 {
+	if i < 0 || i >= len(list) {
+		return 0
+	}
+	return list[i]
+}
+
+// Climber solves hours of a plan. It is safe for concurrent use.
+type Climber struct {
+	plan    *Plan
+	opt     solve.Options
+	ladders []func(ctx context.Context, hour int) ([]solve.Hour, error)
+}
+
+// Climber prepares the hours of a plan.
+func (plan *Plan) Climber(opt solve.Options) *Climber {
+	c := &Climber{plan: plan, opt: opt}
+	for i := range plan.Ladders {
+		l := &plan.Ladders[i]
+		if l.Growing {
+			c.ladders = append(c.ladders, sweep.NewLadder(l.Rungs, []int{plan.Resource}, opt).Hour)
+			continue
+		}
+		// What follows frequency by a droop on its rating is another model at another size: each
+		// rung is solved by itself.
+		var solvers []*solve.Solver
+		for _, r := range l.Rungs {
+			solvers = append(solvers, solve.New(r, opt))
+		}
+		c.ladders = append(c.ladders, func(ctx context.Context, hour int) ([]solve.Hour, error) {
+			out := make([]solve.Hour, len(solvers))
+			var err error
+			for k, s := range solvers {
+				if out[k], err = s.Hour(ctx, l.Rungs[k].Hour(hour, fleet.HourOptions{StartSpreadH: opt.StartSpreadH})); err != nil {
+					return nil, err
+				}
+			}
+			return out, nil
+		})
+	}
+	return c
+}
+
+// Hour solves one hour on all rungs of all ladders.
+func (c *Climber) Hour(ctx context.Context, hour int) ([][]Rung, error) {
+	out := make([][]Rung, len(c.ladders))
+	for i, climb := range c.ladders {
+		solved, err := climb(ctx, hour)
+		if err != nil {
+			return nil, err
+		}
+		l := &c.plan.Ladders[i]
+		base := pricesOf(&solved[0])
+		bare := l.Rungs[0].Hour(hour, fleet.HourOptions{StartSpreadH: c.opt.StartSpreadH})
+		for k := range solved {
+			h := l.Rungs[k].Hour(hour, fleet.HourOptions{StartSpreadH: c.opt.StartSpreadH})
+			r := c.plan.record(&solved[k], h)
+			for rule := range base {
+				r.Taker[rule] = c.plan.answer(h, &base[rule]) - c.plan.answer(bare, &base[rule])
+			}
+			out[i] = append(out[i], r)
+		}
+	}
+	return out, nil
+}
+
+// record keeps of an hour what the study needs.
+func (plan *Plan) record(h *solve.Hour, in *fleet.Hour) Rung {
+	d, u := &h.Dispatch[plan.Resource], &in.Units[plan.Resource]
+	r := Rung{Cost: h.Cost, Bound: h.Bound, Short: h.Status == solve.Short, HeldMW: d.ResponseMW, DownMW: d.DownMW, InertiaMWs: d.InertiaMWs}
+	condenser := plan.Project.Kind == fleet.CondenserProject
+	if condenser && u.Count > 0 {
+		r.OnShare = float64(d.On) / float64(u.Count)
+	}
+	shape := plan.Project.Shape(plan.Case)
+	for rule, p := range pricesOf(h) {
+		i := Income{Response: at(p.response, shape) * d.ResponseMW, Down: at(p.down, shape) * d.DownMW, Inertia: p.inertia * d.InertiaMWs,
+			Own: u.ResponsePerMW*d.ResponseMW + u.DownPerMW*d.DownMW + u.SyntheticPerMWs*d.InertiaMWs}
+		if condenser {
+			i.Energy, i.Own = p.energy*d.OutputMW, float64(d.On)*u.OnCost
+		}
+		r.Paid[rule] = i
+	}
+	return r
+}
+
+// answer is the most that the resource which carries the project can earn at given prices, its own
+// cost paid.
+func (plan *Plan) answer(h *fleet.Hour, p *prices) float64 {
+	u := &h.Units[plan.Resource]
+	if u.Count == 0 {
+		return 0
+	}
+	best := math.Inf(-1)
+	if u.Commit && !u.MustRun {
+		best = 0
+	}
+	for _, q := range formulate.Points(u, math.Inf(1)) {
+		pay := p.energy*q.OutputMW + at(p.response, u.Shape)*q.ResponseMW + p.inertia*q.InertiaMWs
+		if q.DownMW > 0 {
+			pay += at(p.down, u.DownShape) * q.DownMW
+		}
+		best = max(best, pay-q.Cost)
+	}
+	return float64(u.Count) * best
+}
