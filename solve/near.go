@@ -46,6 +46,9 @@ func (s *Solver) HourNear(ctx context.Context, h *fleet.Hour, near []*Trail) (Ho
 		t.mended += out.Closed.Mended
 		out.Closed.Mended = t.mended
 	}
+	if s.opt.Settle {
+		out.Settlement = q.settlement()
+	}
 	t.on = make([]int, len(h.Units))
 	for c := range q.m.p.Classes {
 		t.on[q.m.p.Classes[c].Unit] = q.commit[c]

@@ -20,6 +20,8 @@ type Options struct {
 	SteadyOnly bool
 	// RowsOnly takes the rows' word for a mix: it is neither replayed nor simulated.
 	RowsOnly bool
+	// Settle settles each mix at its prices: Hour.Settlement.
+	Settle bool
 	// NodeLimit bounds the relaxations of one hour; 0: DefaultNodeLimit. An hour that
 	// reaches it is reported with the gap it has.
 	NodeLimit int
