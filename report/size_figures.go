@@ -136,7 +136,10 @@ func netFigure(s *size.Study) figure {
 		taker = append(taker, [2]float64{s.Results[k].MW, s.Results[k].TakerNet})
 	}
 	lo, hi := extent(values...)
-	lo = math.Max(lo, -1.5*hi) // far below nothing pays there is nothing to be seen
+	if hi > 0 {
+		lo = math.Max(lo, -1.5*hi) // far below nothing there is nothing to be seen
+	}
+	hi += 0.12 * (hi - lo) // room for the names of the marks
 	by, label := perYear(math.Max(hi, -lo), s.Plan.Case.Currency)
 	scale := func(points [][2]float64) [][2]float64 {
 		for i := range points {
@@ -172,8 +175,8 @@ func netFigure(s *size.Study) figure {
 		{name: "owner, were prices those without it", line: &takerLine},
 		{name: "where the next " + unit + " stops paying", line: &draw.LineStyle{Color: faded, Width: vg.Points(1), Dashes: []vg.Length{vg.Points(2), vg.Points(2)}}},
 	}
-	below := conditions(s)
-	if s.Plan.Project.Kind != 2 {
+	below := "paid at " + s.Rule.Words() + "; " + conditions(s)
+	if s.Plan.Project.Paced() {
 		below = fmt.Sprintf("out within %s s; ", plain(pace.ActivationS)) + below
 	}
 	return drawn(p, sizeTitle(s, "Net value a year by size"), below, key)
@@ -211,9 +214,10 @@ func energyFigure(s *size.Study) (figure, bool) {
 		values = append(values, e.Net[:]...)
 	}
 	lo, hi := extent(values...)
+	hi += 0.08 * (hi - lo) // room for the name of the mark
 	by, label := perYear(math.Max(hi, -lo), s.Plan.Case.Currency)
 	p := newPlot()
-	p.X.Min, p.X.Max = 0, curve[len(curve)-1].MWh
+	p.X.Min, p.X.Max = 0, 1.02*curve[len(curve)-1].MWh
 	p.Y.Min, p.Y.Max = lo/by, hi/by
 	p.X.Tick.Marker, p.Y.Tick.Marker = niceTicks(8), niceTicks(6)
 	p.X.Label.Text, p.Y.Label.Text = "energy, MWh", "net value, "+label
@@ -302,7 +306,7 @@ func sensitivityFigure(s *size.Study) figure {
 		for side := range size.Sides {
 			values = append(values, w.NetLow[side], w.NetHigh[side])
 		}
-		ticks = append(ticks, plot.Tick{Value: float64(len(swings)-i) - 0.5, Label: w.Input})
+		ticks = append(ticks, plot.Tick{Value: float64(len(swings)-i) - 0.5, Label: w.Input + " (" + grouped(w.At, decimals(w.At)) + ")"})
 	}
 	lo, hi := extent(values...)
 	by, label := perYear(math.Max(hi, -lo), s.Plan.Case.Currency)
@@ -319,6 +323,14 @@ func sensitivityFigure(s *size.Study) figure {
 	key := []entry{{name: "owner", color: sideColors[size.Owner]}, {name: "system", color: sideColors[size.System]}, {name: "as it is", line: &draw.LineStyle{Color: faded, Width: vg.Points(1)}}}
 	below := fmt.Sprintf("each input by ±%.0f %% with the others kept; %s", 100*size.SwingShare, designWords(s, r))
 	return drawn(p, sizeTitle(s, "What moves the net value"), below, key)
+}
+
+// decimals are those that a number of an input needs.
+func decimals(v float64) int {
+	if v == math.Trunc(v) || math.Abs(v) >= 100 {
+		return 0
+	}
+	return 2
 }
 
 // upright is a line across the plot.

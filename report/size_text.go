@@ -40,20 +40,24 @@ func designWords(s *size.Study, r *size.Result) string {
 }
 
 // SizeText writes what a developer could paste into a mail, a decision at its end.
-func SizeText(w io.Writer, s *size.Study, gap float64) error {
+func SizeText(w io.Writer, sized *Sized) error {
+	s := sized.Study
 	p := &page{c: s.Plan.Case}
 	project := s.Plan.Project
 	p.text(fmt.Sprintf("%s (%s) on %s", project.Name, strings.ReplaceAll(project.Kind.String(), "_", " "), s.Plan.Case.Name), "")
-	sizeLooked(p, s, gap)
+	sizeLooked(p, s, sized.Gap)
 	sizeTable(p, s)
 	sizeStops(p, s)
 	sizeEnergy(p, s)
 	sizeUse(p, s)
 	sizeSwings(p, s)
-	sizeDecision(p, s)
+	sizeDecision(p, s, sized.Other)
 	p.line("")
-	p.text("Hours are solved one by one; the project's costs are those of its file. Prices are marginal, the commitment held, so a "+
-		"project that spares whole machines saves more than it is paid.", "")
+	note := "Hours are solved one by one and start costs left out"
+	if sized.StartSpreadH > 0 {
+		note = "Hours are solved one by one, start costs spread over " + plain(sized.StartSpreadH) + " h"
+	}
+	p.text(note+". The project's costs are those of its file.", "")
 	p.text(Caution, "")
 	_, err := w.Write(p.out.Bytes())
 	return err
@@ -124,14 +128,19 @@ func sizeStops(p *page, s *size.Study) {
 		}
 		var words []string
 		for side := range size.Sides {
-			best := math.Inf(-1)
-			for _, k := range pace.Curve[side] {
-				best = max(best, s.Results[k].Net[side])
-			}
-			words = append(words, fmt.Sprintf("%s %s (net %s at best)", sideNames[side], stopWords(pace.Stop[side], unit), amount(math.Round(best))))
+			words = append(words, fmt.Sprintf("%s %s (net %s at best)", sideNames[side], stopWords(pace.Stop[side], unit), amount(math.Round(bestNet(s, pace, side)))))
 		}
 		p.fact(name, strings.Join(words, "; "))
 	}
+}
+
+// bestNet is the most that a side can net at a pace.
+func bestNet(s *size.Study, pace *size.Pace, side size.Side) float64 {
+	best := math.Inf(-1)
+	for _, k := range pace.Curve[side] {
+		best = max(best, s.Results[k].Net[side])
+	}
+	return best
 }
 
 func stopWords(stop size.Stop, unit string) string {
@@ -164,7 +173,11 @@ func sizeEnergy(p *page, s *size.Study) {
 		p.fact("  downwards", fmt.Sprintf("%s MWh of room for what comes in", fixed(e.DownMWh, 3)))
 	}
 	r := &s.Results[s.Best[size.Owner]]
-	p.fact("  best energy", fmt.Sprintf("%s MWh for %s MW, %s times what all of its MW need", round(r.EnergyMWh), plain(r.MW), plain(math.Round(100*r.EnergyMWh/(r.MW*r.NeedMWhPerMW))/100)))
+	times := "just what all of its MW need"
+	if t := math.Round(100*r.EnergyMWh/(r.MW*r.NeedMWhPerMW)) / 100; t != 1 {
+		times = plain(t) + " times what all of its MW need"
+	}
+	p.fact("  best energy", fmt.Sprintf("%s MWh for %s MW: %s", round(r.EnergyMWh), plain(r.MW), times))
 }
 
 func sizeUse(p *page, s *size.Study) {
@@ -173,6 +186,9 @@ func sizeUse(p *page, s *size.Study) {
 	paid := y.Paid[s.Rule]
 	p.section("In use: " + designWords(s, r))
 	p.fact("  needed", fmt.Sprintf("%s h a year paid more than its own cost; in %s h it is sure to save; utilisation %s %%", grouped(y.PaidH[s.Rule], 0), grouped(y.SureH, 0), fixed(100*r.Utilisation, 0)))
+	if when := sizeWhen(s); when != "" {
+		p.fact("", when)
+	}
 	var parts []string
 	for _, part := range []struct {
 		name string
@@ -186,18 +202,36 @@ func sizeUse(p *page, s *size.Study) {
 	p.fact("  as price taker", fmt.Sprintf("%s a year: its own effect on prices takes %s %% of that", amount(math.Round(y.Taker[s.Rule])), fixed(100*(1-paid.Net()/y.Taker[s.Rule]), 0)))
 }
 
+// sizeWhen says when half of the income falls.
+func sizeWhen(s *size.Study) string {
+	var byHour [24]int
+	var byMonth [12]int
+	for _, c := range s.Cells {
+		sum := int(max(c.MeanIncome*float64(c.Hours), 0))
+		byHour[c.HourOfDay] += sum
+		byMonth[c.Month-1] += sum
+	}
+	month, hour := monthWindow(byMonth), hourWindow(byHour)
+	if month == "any time" && hour == "any hour" {
+		return "its income is spread over all months and all hours of the day"
+	}
+	return "half of its income falls in: " + month + "; by hour of the day (UTC): " + hour
+}
+
+// swingsListed is how many of the inputs that matter are listed.
+const swingsListed = 3
+
 func sizeSwings(p *page, s *size.Study) {
 	r := &s.Results[s.Best[size.Owner]]
 	swings := s.Sensitivity(r)
-	const listed = 3
 	p.section(fmt.Sprintf("What matters most (each by ±%.0f %%; the owner's net of %s)", 100*size.SwingShare, designWords(s, r)))
-	for i := range swings[:min(listed, len(swings))] {
+	for i := range swings[:min(swingsListed, len(swings))] {
 		w := &swings[i]
-		p.line("  %s %s to %s", padRight(w.Input, 24), padLeft(amount(math.Round(w.NetLow[size.Owner])), 12), padLeft(amount(math.Round(w.NetHigh[size.Owner])), 12))
+		p.line("  %s %s to %s", padRight(w.Input, 26), padLeft(amount(math.Round(w.NetLow[size.Owner])), 12), padLeft(amount(math.Round(w.NetHigh[size.Owner])), 12))
 	}
 }
 
-func sizeDecision(p *page, s *size.Study) {
+func sizeDecision(p *page, s, other *size.Study) {
 	project := s.Plan.Project
 	unit := project.Kind.SizeUnit()
 	r, sys := &s.Results[s.Best[size.Owner]], &s.Results[s.Best[size.System]]
@@ -225,6 +259,12 @@ func sizeDecision(p *page, s *size.Study) {
 		p.text(fmt.Sprintf("For the system more pays still at the largest size tried: %s nets %s a year.", designWords(s, sys), money(sys.Net[size.System])), "  ")
 	default:
 		p.text(fmt.Sprintf("For the system about %s %s would be best: %s nets it %s a year.", round(s.Pace(sys).Stop[size.System].MW), unit, designWords(s, sys), money(sys.Net[size.System])), "  ")
+	}
+	o := &other.Results[other.Best[size.Owner]]
+	if other.Pays(size.Owner) {
+		p.text(fmt.Sprintf("Paid at %s instead, the owner would build %s: %s nets %s a year.", other.Rule.Words(), stopWords(other.Pace(o).Stop[size.Owner], unit), designWords(other, o), money(o.Net[size.Owner])), "  ")
+	} else {
+		p.text(fmt.Sprintf("Paid at %s instead, no size tried would pay the owner.", other.Rule.Words()), "  ")
 	}
 }
 

@@ -20,6 +20,7 @@ type sizeFlags struct {
 	studyFlags
 	project, mw, energy string
 	activation          []string
+	pay                 string
 }
 
 func sizeCommand() *cobra.Command {
@@ -46,6 +47,7 @@ func sizeCommand() *cobra.Command {
 	fl.StringVar(&f.mw, "mw", "", "sizes to try: `A:B:N`, N sizes from A to B, or a list A,B,...; default: 6 up to what covers the largest loss")
 	fl.StringVar(&f.energy, "energy", "", "`LIST` of energies to try: MWh, or 1x for what the response of all MW needs (default 0.5x,1x,2x)")
 	fl.StringSliceVar(&f.activation, "activation", nil, "activation time to try, `seconds`; may be repeated (default: the project's own)")
+	fl.StringVar(&f.pay, "pay", "marginal", "what the owner is paid: marginal or (convex) hull prices")
 	return cmd
 }
 
@@ -53,6 +55,10 @@ func sizeUp(cmd *cobra.Command, path string, f *sizeFlags) error {
 	started := time.Now()
 	if err := f.check("size"); err != nil {
 		return err
+	}
+	rule, ok := map[string]size.Rule{"marginal": size.Marginal, "hull": size.Hull}[f.pay]
+	if !ok {
+		return bad("--pay is %q, want marginal or hull", f.pay)
 	}
 	if f.project == "" {
 		return bad("size needs --project PROJECT.yaml, what may be built")
@@ -86,8 +92,8 @@ func sizeUp(cmd *cobra.Command, path string, f *sizeFlags) error {
 	if err != nil {
 		return err
 	}
-	study := size.New(plan, size.Marginal, hours, items.Out)
-	if err := report.WriteSize(f.out, study, items.Out, f.gap); err != nil {
+	study := &report.Sized{Gap: f.gap, StartSpreadH: f.startSpread, Study: size.New(plan, rule, hours, items.Out), Other: size.New(plan, size.Hull-rule, hours, items.Out)}
+	if err := report.WriteSize(f.out, study); err != nil {
 		return err
 	}
 	if err := endStudy(&f.studyFlags, path, started); err != nil {
@@ -96,7 +102,7 @@ func sizeUp(cmd *cobra.Command, path string, f *sizeFlags) error {
 	if f.quiet {
 		return nil
 	}
-	return report.SizeText(cmd.OutOrStdout(), study, f.gap)
+	return report.SizeText(cmd.OutOrStdout(), study)
 }
 
 // readProject vets a project for a command that uses it.

@@ -10,8 +10,8 @@ type Cell struct {
 	MeanSaving       float64 // the system's
 }
 
-// Calendar says when a design is needed: a cell for each hour of the day of each month.
-func (s *Study) Calendar(r *Result, of [][][]Rung) []Cell {
+// calendar says when a design is needed: a cell for each hour of the day of each month.
+func (s *Study) calendar(r *Result, of [][][]Rung) []Cell {
 	const months, hours = 12, 24
 	cells := make([]Cell, months*hours)
 	for i := range cells {

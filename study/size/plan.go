@@ -38,7 +38,11 @@ type Ladder struct {
 	Energy      fleet.Energy // for each MW of response
 	Rungs       []*fleet.Case
 	HoldMW      []float64 // most response held on each rung; a condenser's MVA
-	Growing     bool      // rungs are relaxations of those below
+	// Within are, for each rung, those whose mixes it can take over as they are: all that can do no
+	// more in anything; none where a droop counts on the rating, so that another size is another model.
+	Within [][]int
+	// Growing says that rungs differ in the response held alone, so that study/sweep can climb them.
+	Growing bool
 }
 
 // Plan is a grid laid out on ladders.
@@ -52,6 +56,10 @@ type Plan struct {
 
 // rung is a case to be solved: what the project can do in it.
 type rung struct{ powerMW, responseMW float64 }
+
+func (r rung) same(o rung) bool {
+	return same(r.powerMW, o.powerMW) && same(r.responseMW, o.responseMW)
+}
 
 // NewPlan lays out a grid. It refuses sizes that the project cannot have.
 func NewPlan(c *fleet.Case, p *fleet.Project, g Grid) (*Plan, error) {
@@ -87,7 +95,7 @@ func why(p *fleet.Project) string {
 }
 
 // pace lays out the designs of one activation time. Where the power does nothing but carry the
-// response they all stand on one ladder; where synthetic inertia shares it, each energy has one.
+// response, designs that hold the same are one case.
 func (plan *Plan) pace(activationS float64, g Grid) error {
 	c, p := plan.Case, plan.Project
 	energy, err := p.Energy(c, activationS)
@@ -124,45 +132,35 @@ func (plan *Plan) pace(activationS float64, g Grid) error {
 		}
 		return rung{q.ResponseMW, q.ResponseMW}
 	}
-	groups := [][]int{nil}
-	if p.SyntheticMWsPerMW > 0 {
-		groups = make([][]int, len(amounts))
+	rungs := []rung{{}}
+	for i := range points {
+		rungs = append(rungs, of(&points[i]))
+	}
+	slices.SortFunc(rungs, func(a, b rung) int {
+		return cmp.Or(cmp.Compare(a.powerMW, b.powerMW), cmp.Compare(a.responseMW, b.responseMW))
+	})
+	rungs = slices.CompactFunc(rungs, rung.same)
+	rated := p.DroopPct > 0 || p.Model >= 0 && c.Models[p.Model].Model.DroopPct > 0
+	l := Ladder{ActivationS: activationS, Energy: energy, Growing: !rated && p.SyntheticMWsPerMW == 0 && p.Kind != fleet.CondenserProject}
+	for k, r := range rungs {
+		built, err := p.In(c, r.powerMW, r.responseMW, activationS)
+		if err != nil {
+			return err
+		}
+		l.Rungs = append(l.Rungs, built)
+		l.HoldMW = append(l.HoldMW, r.responseMW)
+		var within []int
+		for j := range k {
+			if !rated && rungs[j].responseMW <= r.responseMW {
+				within = append(within, j)
+			}
+		}
+		l.Within = append(l.Within, within)
 	}
 	for i := range points {
-		k := 0
-		if len(groups) > 1 {
-			k = slices.Index(amounts, points[i].Amount)
-		}
-		groups[k] = append(groups[k], i)
+		points[i].Ladder, points[i].Rung = len(plan.Ladders), slices.IndexFunc(rungs, of(&points[i]).same)
 	}
-	for _, members := range groups {
-		if len(members) == 0 {
-			continue
-		}
-		rungs := []rung{{}}
-		for _, i := range members {
-			rungs = append(rungs, of(&points[i]))
-		}
-		slices.SortFunc(rungs, func(a, b rung) int {
-			return cmp.Or(cmp.Compare(a.responseMW, b.responseMW), cmp.Compare(a.powerMW, b.powerMW))
-		})
-		rungs = slices.CompactFunc(rungs, func(a, b rung) bool { return same(a.responseMW, b.responseMW) && same(a.powerMW, b.powerMW) })
-		l := Ladder{ActivationS: activationS, Energy: energy, Growing: p.DroopPct == 0 && (p.Model < 0 || c.Models[p.Model].Model.DroopPct == 0)}
-		for _, r := range rungs {
-			built, err := p.In(c, r.powerMW, r.responseMW, activationS)
-			if err != nil {
-				return err
-			}
-			l.Rungs = append(l.Rungs, built)
-			l.HoldMW = append(l.HoldMW, r.responseMW)
-		}
-		for _, i := range members {
-			want := of(&points[i])
-			points[i].Ladder = len(plan.Ladders)
-			points[i].Rung = slices.IndexFunc(rungs, func(r rung) bool { return same(r.responseMW, want.responseMW) && same(r.powerMW, want.powerMW) })
-		}
-		plan.Ladders = append(plan.Ladders, l)
-	}
+	plan.Ladders = append(plan.Ladders, l)
 	plan.Points = append(plan.Points, points...)
 	return nil
 }

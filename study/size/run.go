@@ -43,13 +43,19 @@ func (i *Income) add(o Income, times float64) {
 // Rule is a rule by which prices come about.
 type Rule int
 
-// The rules.
+// The rules, see solve.Settlement.
 const (
-	Marginal Rule = iota // duals of the dispatch, the commitment held
-	Rules         = 1
+	Marginal Rule = iota // duals of the dispatch, its commitment held
+	Hull                 // of all prices those that leave the least uplift
+	Rules    = 2
 )
 
-func (r Rule) String() string { return [...]string{"marginal"}[r] }
+func (r Rule) String() string { return [...]string{"marginal", "hull"}[r] }
+
+// Words name the rule in text.
+func (r Rule) Words() string {
+	return [...]string{"marginal prices, the commitment held", "convex hull prices"}[r]
+}
 
 // prices are what an hour pays by one rule.
 type prices struct {
@@ -58,11 +64,10 @@ type prices struct {
 }
 
 func pricesOf(h *solve.Hour) [Rules]prices {
-	p := prices{energy: h.Prices.EnergyPerMWh, inertia: h.Prices.InertiaPerMWs, response: h.Prices.ResponsePerMW}
-	if h.Above != nil {
-		p.down = h.Above.DownPerMW
+	of := func(s *solve.Settled) prices {
+		return prices{energy: s.Prices.EnergyPerMWh, inertia: s.Prices.InertiaPerMWs, response: s.Prices.ResponsePerMW, down: s.DownPerMW}
 	}
-	return [Rules]prices{p}
+	return [Rules]prices{of(&h.Settlement.Marginal), of(&h.Settlement.Hull)}
 }
 
 // at is a price of a list that may be empty.
@@ -82,6 +87,7 @@ type Climber struct {
 
 // Climber prepares the hours of a plan.
 func (plan *Plan) Climber(opt solve.Options) *Climber {
+	opt.Settle = true
 	c := &Climber{plan: plan, opt: opt}
 	for i := range plan.Ladders {
 		l := &plan.Ladders[i]
@@ -89,8 +95,6 @@ func (plan *Plan) Climber(opt solve.Options) *Climber {
 			c.ladders = append(c.ladders, sweep.NewLadder(l.Rungs, []int{plan.Resource}, opt).Hour)
 			continue
 		}
-		// What follows frequency by a droop on its rating is another model at another size: each
-		// rung is solved by itself.
 		var solvers []*solve.Solver
 		for _, r := range l.Rungs {
 			solvers = append(solvers, solve.New(r, opt))
@@ -123,6 +127,15 @@ func (c *Climber) Hour(ctx context.Context, hour int) ([][]Rung, error) {
 		for k := range solved {
 			h := l.Rungs[k].Hour(hour, fleet.HourOptions{StartSpreadH: c.opt.StartSpreadH})
 			r := c.plan.record(&solved[k], h)
+			// A cheaper mix of a smaller design is a mix of this one too: one that had to be mended in
+			// closed loop can cost more than that.
+			for _, j := range l.Within[k] {
+				if o := &out[i][j]; o.Short == r.Short && o.Cost < r.Cost || r.Short && !o.Short {
+					bound := min(r.Bound, o.Cost)
+					r = *o
+					r.Bound = bound
+				}
+			}
 			for rule := range base {
 				r.Taker[rule] = c.plan.answer(h, &base[rule]) - c.plan.answer(bare, &base[rule])
 			}

@@ -60,7 +60,7 @@ func (s *Study) Sensitivity(r *Result) []Swing {
 	add("fixed cost", "/"+unit+" a year", p.Money.FixedPerMWYear, money(func(m *fleet.Money, v float64) { m.FixedPerMWYear = v }))
 	add("lifetime", "years", p.Money.LifetimeYears, money(func(m *fleet.Money, v float64) { m.LifetimeYears = v }))
 	add("discount rate", "%", p.Money.DiscountPct, money(func(m *fleet.Money, v float64) { m.DiscountPct = v }))
-	add("worth of the service", "%", 100, func(v float64) [Sides]float64 { return net(p.Money, r.Design, v/100) })
+	add("what the service is worth", "", r.Value[Owner], func(v float64) [Sides]float64 { return net(p.Money, r.Design, v/r.Value[Owner]) })
 	own := r.Year.Paid[s.Rule].Own
 	add("own cost of holding", "a year", own, func(v float64) [Sides]float64 {
 		n := net(p.Money, r.Design, 1)

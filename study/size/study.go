@@ -29,6 +29,7 @@ type Study struct {
 	// Best is the result that is worth most to each side, at a loss where nothing pays.
 	Best  [Sides]int
 	Paces []Pace // one an activation time
+	Cells []Cell // when the owner's best design is needed
 }
 
 // Result is one design in a year.
@@ -80,6 +81,7 @@ func New(plan *Plan, rule Rule, hours []int, of [][][]Rung) *Study {
 		}
 	}
 	s.paces()
+	s.Cells = s.calendar(&s.Results[s.Best[Owner]], of)
 	return s
 }
 

@@ -4,8 +4,8 @@ import (
 	"evenkeel/fleet"
 )
 
-// yearH is the hours that results are counted up to.
-const yearH = 8760
+// YearH is the hours that results are counted up to.
+const YearH = 8760
 
 // Year is what a rung comes to in a year.
 type Year struct {
@@ -24,7 +24,7 @@ type Year struct {
 
 // Years sums the hours of each rung up to a year. hours holds one result of Climber.Hour each.
 func (plan *Plan) Years(hours [][][]Rung) [][]Year {
-	up := yearH / float64(len(hours))
+	up := YearH / float64(len(hours))
 	out := make([][]Year, len(plan.Ladders))
 	for l := range plan.Ladders {
 		out[l] = make([]Year, len(plan.Ladders[l].Rungs))

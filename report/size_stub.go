@@ -1,8 +1,0 @@
-package report
-
-import (
-	"evenkeel/study/size"
-	"io"
-)
-
-func sizeJSON(w io.Writer, s *size.Study, gap float64) error { return nil }
