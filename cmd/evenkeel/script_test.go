@@ -59,6 +59,11 @@ func TestScripts(t *testing.T) {
 					ts.Fatalf("want one warning, got\n%s", strings.Join(found, "\n"))
 				}
 			},
+			// lastrow FILE: keep the last line of FILE as FILE.last.
+			"lastrow": func(ts *testscript.TestScript, neg bool, args []string) {
+				lines := strings.Split(strings.TrimSpace(ts.ReadFile(args[0])), "\n")
+				ts.Check(os.WriteFile(ts.MkAbs(args[0]+".last"), []byte(lines[len(lines)-1]), 0o666))
+			},
 			// pause DURATION
 			"pause": func(ts *testscript.TestScript, neg bool, args []string) {
 				d, err := time.ParseDuration(args[0])
