@@ -64,7 +64,13 @@ func (m mark) Plot(c draw.Canvas, p *plot.Plot) {
 	if m.left {
 		style.XAlign, gap = draw.XRight, -gap
 	}
-	c.FillText(style, vg.Point{X: x + gap, Y: c.Max.Y - vg.Points(3) - vg.Length(m.row)*entryHeight}, m.name)
+	at := vg.Point{X: x + gap, Y: c.Max.Y - vg.Points(3) - vg.Length(m.row)*entryHeight}
+	from, to := at.X, at.X+style.Width(m.name)
+	if m.left {
+		from, to = at.X-style.Width(m.name), at.X
+	}
+	c.FillPolygon(color.White, []vg.Point{{X: from, Y: at.Y}, {X: to, Y: at.Y}, {X: to, Y: at.Y - entryHeight}, {X: from, Y: at.Y - entryHeight}})
+	c.FillText(style, at, m.name)
 }
 
 // perYear scales money for an axis: what to divide by and what to call it.
@@ -132,7 +138,7 @@ func netFigure(s *size.Study) figure {
 		}
 	}
 	taker := [][2]float64{{0, 0}}
-	for _, k := range pace.Curve[size.Owner] {
+	for _, k := range pace.Full {
 		taker = append(taker, [2]float64{s.Results[k].MW, s.Results[k].TakerNet})
 	}
 	lo, hi := extent(values...)
@@ -175,7 +181,10 @@ func netFigure(s *size.Study) figure {
 		{name: "owner, were prices those without it", line: &takerLine},
 		{name: "where the next " + unit + " stops paying", line: &draw.LineStyle{Color: faded, Width: vg.Points(1), Dashes: []vg.Length{vg.Points(2), vg.Points(2)}}},
 	}
-	below := "paid at " + s.Rule.Words() + "; " + conditions(s)
+	below := "energy as is best for each; owner paid at " + s.Rule.Words() + "; " + conditions(s)
+	if !s.Plan.Project.Kind.Stores() {
+		below = "owner paid at " + s.Rule.Words() + "; " + conditions(s)
+	}
 	if s.Plan.Project.Paced() {
 		below = fmt.Sprintf("out within %s s; ", plain(pace.ActivationS)) + below
 	}
@@ -306,7 +315,7 @@ func sensitivityFigure(s *size.Study) figure {
 		for side := range size.Sides {
 			values = append(values, w.NetLow[side], w.NetHigh[side])
 		}
-		ticks = append(ticks, plot.Tick{Value: float64(len(swings)-i) - 0.5, Label: w.Input + " (" + grouped(w.At, decimals(w.At)) + ")"})
+		ticks = append(ticks, plot.Tick{Value: float64(len(swings)-i) - 0.5, Label: w.Input + " (" + grouped(w.At, decimals(w.At)) + " " + w.Unit + ")"})
 	}
 	lo, hi := extent(values...)
 	by, label := perYear(math.Max(hi, -lo), s.Plan.Case.Currency)

@@ -92,7 +92,7 @@ func thousands(v float64) string { return grouped(v/1000, 0) }
 func sizeTable(p *page, s *size.Study) {
 	pace := bestPace(s)
 	unit := s.Plan.Project.Kind.SizeUnit()
-	title := "By size, with the energy that is best for the owner"
+	title := "By size, with the energy that its MW can use"
 	if !s.Plan.Project.Kind.Stores() {
 		title = "By size"
 	}
@@ -102,7 +102,7 @@ func sizeTable(p *page, s *size.Study) {
 	p.section(title + fmt.Sprintf(" (thousand %s a year)", s.Plan.Case.Currency))
 	p.line("%s%s%s%s%s%s%s%s", padLeft(unit, 9), padLeft("MWh", 9), padLeft("costs", 9), padLeft("saves", 10), padLeft("net", 10), padLeft("earns", 10), padLeft("net", 10), padLeft("as taker", 11))
 	p.line("%s%s%s%s%s%s%s%s", "", padLeft("", 18), padLeft("", 9), padLeft("system", 10), padLeft("system", 10), padLeft("owner", 10), padLeft("owner", 10), padLeft("owner", 11))
-	for _, k := range pace.Curve[size.Owner] {
+	for _, k := range pace.Full {
 		r := &s.Results[k]
 		mwh := ""
 		if s.Plan.Project.Kind.Stores() {
@@ -227,7 +227,8 @@ func sizeSwings(p *page, s *size.Study) {
 	p.section(fmt.Sprintf("What matters most (each by ±%.0f %%; the owner's net of %s)", 100*size.SwingShare, designWords(s, r)))
 	for i := range swings[:min(swingsListed, len(swings))] {
 		w := &swings[i]
-		p.line("  %s %s to %s", padRight(w.Input, 26), padLeft(amount(math.Round(w.NetLow[size.Owner])), 12), padLeft(amount(math.Round(w.NetHigh[size.Owner])), 12))
+		p.line("  %s %s to %s   at %s to %s %s", padRight(w.Input, 25), padLeft(amount(math.Round(w.NetLow[size.Owner])), 11), padLeft(amount(math.Round(w.NetHigh[size.Owner])), 11),
+			grouped(w.Low, decimals(w.Low)), grouped(w.High, decimals(w.High)), strings.TrimSuffix(w.Unit, " a year"))
 	}
 }
 
@@ -249,7 +250,7 @@ func sizeDecision(p *page, s, other *size.Study) {
 		if project.Kind != fleet.CondenserProject && r.ActivationS > 0 {
 			what += ", out within " + plain(r.ActivationS) + " s"
 		}
-		p.text(fmt.Sprintf("%s: at %s the owner nets %s a year on a capital of %s, and breaks even at %s per %s (asked: %s).", what,
+		p.text(fmt.Sprintf("%s: at %s, the nearest design tried, the owner nets %s a year on a capital of %s, and breaks even at %s per %s (asked: %s).", what,
 			designWords(s, r), money(r.Net[size.Owner]), money(size.Capital(project.Money, r.Design)), money(r.BreakEven[size.Owner]), unit, money(project.Money.CapitalPerMW)), "  ")
 	}
 	switch {
@@ -259,6 +260,9 @@ func sizeDecision(p *page, s, other *size.Study) {
 		p.text(fmt.Sprintf("For the system more pays still at the largest size tried: %s nets %s a year.", designWords(s, sys), money(sys.Net[size.System])), "  ")
 	default:
 		p.text(fmt.Sprintf("For the system about %s %s would be best: %s nets it %s a year.", round(s.Pace(sys).Stop[size.System].MW), unit, designWords(s, sys), money(sys.Net[size.System])), "  ")
+	}
+	if first := s.Results[pace.Curve[size.Owner][0]].MW; r.MW == first {
+		p.text(fmt.Sprintf("That is the smallest size tried: --mw %s:%s:8 looks closer.", plain(first/4), plain(2*first)), "  ")
 	}
 	o := &other.Results[other.Best[size.Owner]]
 	if other.Pays(size.Owner) {

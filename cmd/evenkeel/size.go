@@ -44,7 +44,7 @@ func sizeCommand() *cobra.Command {
 		g.DefValue = fmt.Sprint(gap)
 	}
 	fl.StringVar(&f.project, "project", "", "YAML file of what may be built")
-	fl.StringVar(&f.mw, "mw", "", "sizes to try: `A:B:N`, N sizes from A to B, or a list A,B,...; default: 6 up to what covers the largest loss")
+	fl.StringVar(&f.mw, "mw", "", "sizes to try: `A:B:N`, N sizes from A to B, or a list A,B,...; default: up to what covers the largest loss")
 	fl.StringVar(&f.energy, "energy", "", "`LIST` of energies to try: MWh, or 1x for what the response of all MW needs (default 0.5x,1x,2x)")
 	fl.StringSliceVar(&f.activation, "activation", nil, "activation time to try, `seconds`; may be repeated (default: the project's own)")
 	fl.StringVar(&f.pay, "pay", "marginal", "what the owner is paid: marginal or (convex) hull prices")
@@ -122,9 +122,8 @@ func readProject(cmd *cobra.Command, path string, c *fleet.Case, quiet bool) (*f
 // grid reads what to try.
 func (f *sizeFlags) grid(c *fleet.Case, p *fleet.Project) (size.Grid, error) {
 	var g size.Grid
-	const sizes = 6
 	if f.mw == "" {
-		g.SizesMW = size.DefaultSizes(c, p, sizes)
+		g.SizesMW = size.DefaultSizes(c, p)
 	} else {
 		list, err := sizeList(f.mw)
 		if err != nil {

@@ -222,18 +222,24 @@ func MostMW(c *fleet.Case, p *fleet.Project) float64 {
 	return most
 }
 
-// DefaultSizes are about n equal steps to MostMW, rounded up to a round step.
-func DefaultSizes(c *fleet.Case, p *fleet.Project, n int) []float64 {
-	step := MostMW(c, p) / float64(n)
+// DefaultSizes go up to MostMW, closer together where they are small, as worth bends most there. A
+// step is a round number, of a condenser whole machines, so the last may lie above MostMW.
+func DefaultSizes(c *fleet.Case, p *fleet.Project) []float64 {
+	most := MostMW(c, p)
+	times := []float64{1, 2, 3, 4, 6, 8, 10, 12, 16, 20}
+	step := most / times[len(times)-1]
 	if p.Kind == fleet.CondenserProject {
 		step = p.UnitMVA * math.Max(1, math.Ceil(step/p.UnitMVA-1e-9))
 	} else if step > 0 {
-		ten := math.Pow(10, math.Floor(math.Log10(step)))
-		step = ten / 2 * math.Ceil(step/(ten/2)-1e-9)
+		half := math.Pow(10, math.Floor(math.Log10(step))) / 2
+		step = half * math.Ceil(step/half-1e-9)
 	}
 	var out []float64
-	for i := range n {
-		out = append(out, step*float64(i+1))
+	for _, n := range times {
+		out = append(out, step*n)
+		if step*n >= most {
+			break
+		}
 	}
 	return out
 }

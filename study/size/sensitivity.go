@@ -52,17 +52,17 @@ func (s *Study) Sensitivity(r *Result) []Swing {
 			return net(m, r.Design, 1)
 		}
 	}
-	unit := p.Kind.SizeUnit()
-	add("capital per "+unit, "/"+unit, p.Money.CapitalPerMW, money(func(m *fleet.Money, v float64) { m.CapitalPerMW = v }))
+	unit, coin := p.Kind.SizeUnit(), s.Plan.Case.Currency
+	add("capital per "+unit, coin, p.Money.CapitalPerMW, money(func(m *fleet.Money, v float64) { m.CapitalPerMW = v }))
 	if p.Kind.Stores() {
-		add("capital per MWh", "/MWh", p.Money.CapitalPerMWh, money(func(m *fleet.Money, v float64) { m.CapitalPerMWh = v }))
+		add("capital per MWh", coin, p.Money.CapitalPerMWh, money(func(m *fleet.Money, v float64) { m.CapitalPerMWh = v }))
 	}
-	add("fixed cost", "/"+unit+" a year", p.Money.FixedPerMWYear, money(func(m *fleet.Money, v float64) { m.FixedPerMWYear = v }))
+	add("fixed cost per "+unit, coin+" a year", p.Money.FixedPerMWYear, money(func(m *fleet.Money, v float64) { m.FixedPerMWYear = v }))
 	add("lifetime", "years", p.Money.LifetimeYears, money(func(m *fleet.Money, v float64) { m.LifetimeYears = v }))
 	add("discount rate", "%", p.Money.DiscountPct, money(func(m *fleet.Money, v float64) { m.DiscountPct = v }))
-	add("what the service is worth", "", r.Value[Owner], func(v float64) [Sides]float64 { return net(p.Money, r.Design, v/r.Value[Owner]) })
+	add("what the service is worth", coin+" a year", r.Value[Owner], func(v float64) [Sides]float64 { return net(p.Money, r.Design, v/r.Value[Owner]) })
 	own := r.Year.Paid[s.Rule].Own
-	add("own cost of holding", "a year", own, func(v float64) [Sides]float64 {
+	add("own cost of holding", coin+" a year", own, func(v float64) [Sides]float64 {
 		n := net(p.Money, r.Design, 1)
 		for side := range n {
 			n[side] -= v - own
@@ -84,7 +84,7 @@ func (s *Study) Sensitivity(r *Result) []Swing {
 	if p.Kind.Stores() {
 		add("hold", "s", p.HoldS, needs(func(q *fleet.Project, v float64) { q.HoldS = v }))
 		add("ready again", "s", p.ReadyAgainS, needs(func(q *fleet.Project, v float64) { q.ReadyAgainS = v }))
-		add("recharging power", "% of its own", 100*p.RechargeShare, needs(func(q *fleet.Project, v float64) { q.RechargeShare = min(v/100, 1) }))
+		add("recharging power", "%", 100*p.RechargeShare, needs(func(q *fleet.Project, v float64) { q.RechargeShare = min(v/100, 1) }))
 	}
 	slices.SortStableFunc(out, func(a, b Swing) int { return cmp.Compare(b.Span(Owner), a.Span(Owner)) })
 	return out

@@ -132,7 +132,7 @@ func TestSensitivityMovesWhatItSays(t *testing.T) {
 		recovery := Recovery(p.Money.DiscountPct, p.Money.LifetimeYears)
 		part, linear := map[string]float64{
 			"capital per MW": recovery * p.Money.CapitalPerMW * r.MW, "capital per MWh": recovery * p.Money.CapitalPerMWh * r.EnergyMWh,
-			"fixed cost": p.Money.FixedPerMWYear * r.MW, "own cost of holding": r.Year.Paid[Marginal].Own,
+			"fixed cost per MW": p.Money.FixedPerMWYear * r.MW, "own cost of holding": r.Year.Paid[Marginal].Own,
 		}[w.Input]
 		if linear && (math.Abs(r.Net[Owner]-w.NetHigh[Owner]-0.2*part) > 1e-6*part || math.Abs(w.NetLow[System]-r.Net[System]-0.2*part) > 1e-6*part) {
 			t.Errorf("%s: from %g to %g, want ±%g of %g", w.Input, w.NetLow[Owner], w.NetHigh[Owner], 0.2*part, r.Net[Owner])
@@ -188,13 +188,17 @@ func TestPlanRefuses(t *testing.T) {
 	}
 }
 
-// Nothing but wind and sun is larger than the link of the demo, 50 MW; what covers its loss is a
-// sound size to end with, in ten round steps.
+// Of what cannot be turned down, a machine of 52 MW is the most that the demo can lose at once.
+// Condensers of 12 s go in whole machines up to the inertia that its loss needs, by the closed form
+// E = f0·P/(2·RoCoF) (REFERENCES, R1): 50·52/1.6 = 1,625 MW·s, 135.4 MVA (computed).
 func TestDefaultSizes(t *testing.T) {
 	c, p := skerra(t)
-	most := MostMW(c, p)
-	list := DefaultSizes(c, p, 10)
-	if len(list) != 10 || list[9] < most || list[9] > 1.5*most || !same(list[1], 2*list[0]) {
-		t.Errorf("%v for a largest loss of %g MW", list, most)
+	if got, want := DefaultSizes(c, p), []float64{3, 6, 9, 12, 18, 24, 30, 36, 48, 60}; !reflect.DeepEqual(got, want) {
+		t.Errorf("%v, want %v", got, want)
+	}
+	condenser := *p
+	condenser.Kind, condenser.UnitMVA, condenser.InertiaS = fleet.CondenserProject, 15, 12
+	if got, want := DefaultSizes(c, &condenser), []float64{15, 30, 45, 60, 90, 120, 150}; !reflect.DeepEqual(got, want) {
+		t.Errorf("%v, want %v", got, want)
 	}
 }

@@ -48,7 +48,8 @@ type Result struct {
 type Pace struct {
 	ActivationS float64
 	Energy      fleet.Energy
-	Curve       [Sides][]int // a result a size
+	Curve       [Sides][]int // a result a size, the best for each side
+	Full        []int        // and the one with just the energy that its MW can use
 	Stop        [Sides]Stop
 }
 
@@ -92,6 +93,12 @@ func (s *Study) paces() {
 			s.Paces = append(s.Paces, Pace{ActivationS: r.ActivationS, Energy: s.Plan.Ladders[r.Ladder].Energy})
 		}
 		p := &s.Paces[len(s.Paces)-1]
+		switch n := len(p.Full); {
+		case n == 0 || s.Results[p.Full[n-1]].MW != r.MW:
+			p.Full = append(p.Full, i)
+		case r.ResponseMW > s.Results[p.Full[n-1]].ResponseMW: // energies rise
+			p.Full[n-1] = i
+		}
 		for side := range Sides {
 			c := p.Curve[side]
 			switch n := len(c); {
