@@ -24,13 +24,13 @@ func sideLine(side size.Side) draw.LineStyle {
 
 var takerLine = draw.LineStyle{Color: rgb(0x999999), Width: vg.Points(1.4), Dashes: []vg.Length{vg.Points(5), vg.Points(3)}}
 
-// dots marks what was solved, on a line through them.
-type dots struct {
+// spots mark what was solved, on a line through them.
+type spots struct {
 	points [][2]float64
 	color  color.Color
 }
 
-func (d dots) Plot(c draw.Canvas, p *plot.Plot) {
+func (d spots) Plot(c draw.Canvas, p *plot.Plot) {
 	tx, ty := p.Transforms(&c)
 	for _, q := range d.points {
 		at := vg.Point{X: tx(q[0]), Y: ty(q[1])}
@@ -97,7 +97,7 @@ func sizeFigures(s *size.Study) []namedFigure {
 	if len(s.Paces) > 1 {
 		out = append(out, namedFigure{"activation", activationFigure(s)})
 	}
-	return append(out, namedFigure{"sensitivity", sensitivityFigure(s)})
+	return append(out, namedFigure{"needed", neededFigure(s)}, namedFigure{"sensitivity", sensitivityFigure(s)})
 }
 
 func sizeTitle(s *size.Study, what string) string {
@@ -145,6 +145,7 @@ func netFigure(s *size.Study) figure {
 	if hi > 0 {
 		lo = math.Max(lo, -1.5*hi) // far below nothing there is nothing to be seen
 	}
+	taker = below(taker, hi)
 	hi += 0.12 * (hi - lo) // room for the names of the marks
 	by, label := perYear(math.Max(hi, -lo), s.Plan.Case.Currency)
 	scale := func(points [][2]float64) [][2]float64 {
@@ -166,7 +167,7 @@ func netFigure(s *size.Study) figure {
 	p.Add(band{at, l, h, rgb(0xD9D4EA)})
 	for side := range size.Sides {
 		points := scale(lines[side])
-		p.Add(path{points, sideLine(side)}, dots{points[1:], sideColors[side]})
+		p.Add(path{points, sideLine(side)}, spots{points[1:], sideColors[side]})
 	}
 	row := 0
 	for side := range size.Sides {
@@ -181,14 +182,24 @@ func netFigure(s *size.Study) figure {
 		{name: "owner, were prices those without it", line: &takerLine},
 		{name: "where the next " + unit + " stops paying", line: &draw.LineStyle{Color: faded, Width: vg.Points(1), Dashes: []vg.Length{vg.Points(2), vg.Points(2)}}},
 	}
-	below := "energy as is best for each; owner paid at " + s.Rule.Words() + "; " + conditions(s)
+	about := "energy as is best for each; owner paid at " + s.Rule.Words() + "; " + conditions(s)
 	if !s.Plan.Project.Kind.Stores() {
-		below = "owner paid at " + s.Rule.Words() + "; " + conditions(s)
+		about = "owner paid at " + s.Rule.Words() + "; " + conditions(s)
 	}
 	if s.Plan.Project.Paced() {
-		below = fmt.Sprintf("out within %s s; ", plain(pace.ActivationS)) + below
+		about = fmt.Sprintf("out within %s s; ", plain(pace.ActivationS)) + about
 	}
-	return drawn(p, sizeTitle(s, "Net value a year by size"), below, key)
+	return drawn(p, sizeTitle(s, "Net value a year by size"), about, key)
+}
+
+// below cuts a line where it first passes most.
+func below(points [][2]float64, most float64) [][2]float64 {
+	for i := 1; i < len(points); i++ {
+		if a, b := points[i-1], points[i]; b[1] > most && b[1] > a[1] {
+			return append(points[:i:i], [2]float64{a[0] + (b[0]-a[0])*(most-a[1])/(b[1]-a[1]), most})
+		}
+	}
+	return points
 }
 
 // drawn is a figure of one plot with its key above.
@@ -241,7 +252,7 @@ func energyFigure(s *size.Study) (figure, bool) {
 				solved = append(solved, [2]float64{o.EnergyMWh, o.Net[side] / by})
 			}
 		}
-		p.Add(path{line, sideLine(side)}, dots{solved, sideColors[side]})
+		p.Add(path{line, sideLine(side)}, spots{solved, sideColors[side]})
 	}
 	need := r.MW * r.NeedMWhPerMW
 	p.Add(mark{x: need, name: fmt.Sprintf("%s MWh carry the response of all %s MW", round(need), plain(r.MW)), color: ink, left: need > 0.6*p.X.Max})
@@ -276,7 +287,7 @@ func activationFigure(s *size.Study) figure {
 		for i := range lines[side] {
 			lines[side][i][1] /= by
 		}
-		p.Add(path{lines[side], sideLine(side)}, dots{lines[side], sideColors[side]})
+		p.Add(path{lines[side], sideLine(side)}, spots{lines[side], sideColors[side]})
 	}
 	key := []entry{{name: "owner, at the size that is best for it", line: ptr(sideLine(size.Owner))}, {name: "system, at the size that is best for it", line: ptr(sideLine(size.System))}}
 	return drawn(p, sizeTitle(s, "What speed is worth"), "net value a year at the best of the sizes and energies tried; "+conditions(s), key)

@@ -198,14 +198,25 @@ func sizeUse(p *page, s *size.Study) {
 			parts = append(parts, part.name+" "+amount(math.Round(part.v)))
 		}
 	}
+	if len(parts) == 0 {
+		parts = append(parts, "0")
+	}
 	p.fact("  income", strings.Join(parts, ", ")+" "+s.Plan.Case.Currency+" a year")
+	if taker := y.Taker[s.Rule]; !(taker > 0) {
+		p.fact("  as price taker", "nothing: no price without it is above its own cost")
+		return
+	}
 	p.fact("  as price taker", fmt.Sprintf("%s a year: its own effect on prices takes %s %% of that", amount(math.Round(y.Taker[s.Rule])), fixed(100*(1-paid.Net()/y.Taker[s.Rule]), 0)))
 }
 
 // sizeWhen says when half of the income falls.
 func sizeWhen(s *size.Study) string {
+	const week = 168
 	var byHour [24]int
 	var byMonth [12]int
+	if len(s.Hours) < week || !(s.Results[s.Best[size.Owner]].Value[size.Owner] > 0) {
+		return ""
+	}
 	for _, c := range s.Cells {
 		sum := int(max(c.MeanIncome*float64(c.Hours), 0))
 		byHour[c.HourOfDay] += sum
@@ -240,8 +251,11 @@ func sizeDecision(p *page, s, other *size.Study) {
 	p.section("Decision")
 	money := func(v float64) string { return amount(math.Round(v)) + " " + s.Plan.Case.Currency }
 	if !s.Pays(size.Owner) {
-		p.text(fmt.Sprintf("Do not build on these prices: no size tried pays its owner. The least bad, %s, nets %s a year; it would pay with a capital cost of %s per %s.",
-			designWords(s, r), money(r.Net[size.Owner]), money(r.BreakEven[size.Owner]), unit), "  ")
+		when := "it would pay at no capital cost"
+		if b := r.BreakEven[size.Owner]; b > 0 {
+			when = fmt.Sprintf("it would pay with a capital cost of %s per %s (asked: %s)", money(b), unit, money(project.Money.CapitalPerMW))
+		}
+		p.text(fmt.Sprintf("Do not build on these prices: no size tried pays its owner. The least bad, %s, nets %s a year; %s.", designWords(s, r), money(r.Net[size.Owner]), when), "  ")
 	} else {
 		what := "Build about " + stopSize(pace.Stop[size.Owner], r, unit)
 		if project.Kind.Stores() {
@@ -261,7 +275,7 @@ func sizeDecision(p *page, s, other *size.Study) {
 	default:
 		p.text(fmt.Sprintf("For the system about %s %s would be best: %s nets it %s a year.", round(s.Pace(sys).Stop[size.System].MW), unit, designWords(s, sys), money(sys.Net[size.System])), "  ")
 	}
-	if first := s.Results[pace.Curve[size.Owner][0]].MW; r.MW == first {
+	if first := s.Results[pace.Curve[size.Owner][0]].MW; r.MW == first && r.BreakEven[size.Owner] > 0 && project.Kind != fleet.CondenserProject {
 		p.text(fmt.Sprintf("That is the smallest size tried: --mw %s:%s:8 looks closer.", plain(first/4), plain(2*first)), "  ")
 	}
 	o := &other.Results[other.Best[size.Owner]]
