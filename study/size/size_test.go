@@ -202,3 +202,31 @@ func TestDefaultSizes(t *testing.T) {
 		t.Errorf("%v, want %v", got, want)
 	}
 }
+
+// No design costs the system more than one that can do no more in anything, whatever the closed
+// loop made of either: a short hold beside synthetic inertia is what has to be mended most.
+func TestMoreOfEverythingNeverCostsMore(t *testing.T) {
+	c, p := skerra(t)
+	fly := *p
+	fly.Kind, fly.LevelHz, fly.HoldS, fly.WithdrawS = fleet.FlywheelProject, 0, 15, 5
+	fly.SyntheticMWsPerMW, fly.SyntheticPerMWs, fly.SyntheticS = 8, 0.02, 0.1
+	plan, err := NewPlan(c, &fly, Grid{SizesMW: []float64{9, 18}, Energies: []Amount{{Times: 0.5}, {Times: 1}}})
+	if err != nil {
+		t.Fatal(err)
+	}
+	climber := plan.Climber(solve.Options{})
+	for _, h := range hours {
+		out, err := climber.Hour(context.Background(), h)
+		if err != nil {
+			t.Fatal(err)
+		}
+		for a := range plan.Points {
+			for b := range plan.Points {
+				q, r := &plan.Points[a], &plan.Points[b]
+				if q.MW <= r.MW && q.ResponseMW <= r.ResponseMW && out[0][q.Rung].Cost < out[0][r.Rung].Cost {
+					t.Errorf("hour %d: %g MW with %g MW of response cost %g, less than %g with %g", h, q.MW, q.ResponseMW, out[0][q.Rung].Cost, r.MW, r.ResponseMW)
+				}
+			}
+		}
+	}
+}
