@@ -68,7 +68,7 @@ func sizeLooked(p *page, s *size.Study, gap float64) {
 	first, last := c.Times[s.Hours[0]], c.Times[s.Hours[len(s.Hours)-1]]
 	p.line("%s, %s to %s UTC", conditions(s), minute(first), minute(last))
 	best := &s.Results[s.Best[size.System]]
-	p.text(fmt.Sprintf("%s in %s; gap %s %%. The saving at %s is known to lie between %s and %s %s a year.", plural(len(s.Plan.Points), "design"), plural(s.Plan.Cases(), "case"),
+	p.text(fmt.Sprintf("%s in %s (who holds the same is one); gap %s %%. The saving at %s is known to lie between %s and %s %s a year.", plural(len(s.Plan.Points), "design"), plural(s.Plan.Cases(), "case"),
 		plain(100*gap), designWords(s, best), amount(best.Year.SavingAtLeast), amount(best.Year.SavingAtMost), c.Currency), "")
 	short := 0.0
 	for i := range s.Results {
@@ -100,12 +100,15 @@ func sizeTable(p *page, s *size.Study) {
 		title += ", out within " + plain(pace.ActivationS) + " s"
 	}
 	p.section(title + fmt.Sprintf(" (thousand %s a year)", s.Plan.Case.Currency))
-	p.line("%s%s%s%s%s%s%s%s", padLeft(unit, 9), padLeft("MWh", 9), padLeft("costs", 9), padLeft("saves", 10), padLeft("net", 10), padLeft("earns", 10), padLeft("net", 10), padLeft("as taker", 11))
+	mwh := ""
+	if s.Plan.Project.Kind.Stores() {
+		mwh = "MWh"
+	}
+	p.line("%s%s%s%s%s%s%s%s", padLeft(unit, 9), padLeft(mwh, 9), padLeft("costs", 9), padLeft("saves", 10), padLeft("net", 10), padLeft("earns", 10), padLeft("net", 10), padLeft("as taker", 11))
 	p.line("%s%s%s%s%s%s%s%s", "", padLeft("", 18), padLeft("", 9), padLeft("system", 10), padLeft("system", 10), padLeft("owner", 10), padLeft("owner", 10), padLeft("owner", 11))
 	for _, k := range pace.Full {
 		r := &s.Results[k]
-		mwh := ""
-		if s.Plan.Project.Kind.Stores() {
+		if mwh != "" {
 			mwh = round(r.EnergyMWh)
 		}
 		p.line("%s%s%s%s%s%s%s%s", padLeft(plain(r.MW), 9), padLeft(mwh, 9), padLeft(thousands(r.Cost), 9), padLeft(thousands(r.Value[size.System]), 10), padLeft(thousands(r.Net[size.System]), 10),
@@ -153,6 +156,14 @@ func stopWords(stop size.Stop, unit string) string {
 	return "about " + round(stop.MW) + " " + unit
 }
 
+// perMW prints MWh for a MW: a flywheel has few.
+func perMW(v float64) string {
+	if v < 0.1 {
+		return fixed(v, 4)
+	}
+	return fixed(v, 3)
+}
+
 func sizeEnergy(p *page, s *size.Study) {
 	project := s.Plan.Project
 	if !project.Kind.Stores() {
@@ -161,16 +172,16 @@ func sizeEnergy(p *page, s *size.Study) {
 	pace := bestPace(s)
 	e := pace.Energy
 	p.section("Energy for each MW held")
-	p.fact("  in all", fmt.Sprintf("%s MWh", fixed(e.TotalMWh, 3)))
-	p.fact("  hold", fmt.Sprintf("%s MWh: %s s at full power, %s, %s %% there and back", fixed(e.EventsMWh, 3), plain(math.Round(e.HoldS*10)/10), plural(project.Events, "event"), plain(project.EfficiencyPct)))
+	p.fact("  in all", fmt.Sprintf("%s MWh", perMW(e.TotalMWh)))
+	p.fact("  hold", fmt.Sprintf("%s MWh: %s s at full power, %s, %s %% there and back", perMW(e.EventsMWh), plain(math.Round(e.HoldS*10)/10), plural(project.Events, "event"), plain(project.EfficiencyPct)))
 	charge := fmt.Sprintf("charged again after %s min at %s %% of its power", fixed(e.RechargeS/60, 0), plain(100*project.RechargeShare))
 	if e.RechargeMWh > 0 {
-		p.fact("  recovery", fmt.Sprintf("%s MWh: it is %s and must be ready after %s min", fixed(e.RechargeMWh, 3), charge, plain(math.Round(project.ReadyAgainS/6)/10)))
+		p.fact("  recovery", fmt.Sprintf("%s MWh: it is %s and must be ready after %s min", perMW(e.RechargeMWh), charge, plain(math.Round(project.ReadyAgainS/6)/10)))
 	} else {
 		p.fact("  recovery", "none: it is "+charge+", before it must be ready")
 	}
 	if e.DownMWh > 0 {
-		p.fact("  downwards", fmt.Sprintf("%s MWh of room for what comes in", fixed(e.DownMWh, 3)))
+		p.fact("  downwards", fmt.Sprintf("%s MWh of room for what comes in", perMW(e.DownMWh)))
 	}
 	r := &s.Results[s.Best[size.Owner]]
 	times := "just what all of its MW need"
@@ -206,7 +217,11 @@ func sizeUse(p *page, s *size.Study) {
 		p.fact("  as price taker", "nothing: no price without it is above its own cost")
 		return
 	}
-	p.fact("  as price taker", fmt.Sprintf("%s a year: its own effect on prices takes %s %% of that", amount(math.Round(y.Taker[s.Rule])), fixed(100*(1-paid.Net()/y.Taker[s.Rule]), 0)))
+	effect, takes := 100*(1-paid.Net()/y.Taker[s.Rule]), "takes %s %% of that"
+	if effect < 0 {
+		effect, takes = -effect, "adds %s %% to that"
+	}
+	p.fact("  as price taker", fmt.Sprintf("%s a year: its own effect on prices "+takes, amount(math.Round(y.Taker[s.Rule])), fixed(effect, 0)))
 }
 
 // sizeWhen says when half of the income falls.
@@ -257,7 +272,7 @@ func sizeDecision(p *page, s, other *size.Study) {
 		}
 		p.text(fmt.Sprintf("Do not build on these prices: no size tried pays its owner. The least bad, %s, nets %s a year; %s.", designWords(s, r), money(r.Net[size.Owner]), when), "  ")
 	} else {
-		what := "Build about " + stopSize(pace.Stop[size.Owner], r, unit)
+		what := "Build " + stopSize(pace.Stop[size.Owner], r, unit)
 		if project.Kind.Stores() {
 			what += " / " + round(stopMW(pace.Stop[size.Owner], r)*r.HoursOfEnergy) + " MWh"
 		}
@@ -294,9 +309,8 @@ func stopMW(stop size.Stop, r *size.Result) float64 {
 }
 
 func stopSize(stop size.Stop, r *size.Result, unit string) string {
-	text := round(stopMW(stop, r)) + " " + unit
 	if stop.Beyond {
-		text += " or more"
+		return plain(stop.MW) + " " + unit + " or more"
 	}
-	return text
+	return "about " + round(stopMW(stop, r)) + " " + unit
 }

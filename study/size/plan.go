@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"math"
 	"slices"
+	"strconv"
 
 	"evenkeel/fleet"
 )
@@ -236,10 +237,20 @@ func DefaultSizes(c *fleet.Case, p *fleet.Project) []float64 {
 	}
 	var out []float64
 	for _, n := range times {
-		out = append(out, step*n)
+		out = append(out, tidy(step*n))
 		if step*n >= most {
 			break
 		}
+	}
+	return out
+}
+
+// tidy drops what is left of rounding behind the ninth figure, so that 0.6 is 0.6.
+func tidy(v float64) float64 {
+	const figures = 9
+	out, err := strconv.ParseFloat(strconv.FormatFloat(v, 'g', figures, 64), 64)
+	if err != nil {
+		return v
 	}
 	return out
 }
@@ -251,7 +262,7 @@ func Spread(a, b float64, n int) []float64 {
 	}
 	out := make([]float64, n)
 	for i := range out {
-		out[i] = a + (b-a)*float64(i)/float64(n-1)
+		out[i] = tidy(a + (b-a)*float64(i)/float64(n-1))
 	}
 	return out
 }
