@@ -22,6 +22,8 @@ func round(v float64) string {
 func conditions(s *size.Study) string {
 	if n, all := len(s.Hours), s.Plan.Case.Hours(); n < all {
 		return fmt.Sprintf("%s of %s, counted up to a year", count(n), hoursOf(all))
+	} else if n != size.YearH {
+		return fmt.Sprintf("%s, counted to a year of %s", hoursOf(n), count(size.YearH))
 	}
 	return hoursOf(len(s.Hours))
 }
@@ -276,6 +278,9 @@ func sizeDecision(p *page, s, other *size.Study) {
 		if project.Kind.Stores() {
 			what += " / " + round(stopMW(pace.Stop[size.Owner], r)*r.HoursOfEnergy) + " MWh"
 		}
+		if pace.Stop[size.Owner].Beyond {
+			what += " or more"
+		}
 		if project.Kind != fleet.CondenserProject && r.ActivationS > 0 {
 			what += ", out within " + plain(r.ActivationS) + " s"
 		}
@@ -310,7 +315,7 @@ func stopMW(stop size.Stop, r *size.Result) float64 {
 
 func stopSize(stop size.Stop, r *size.Result, unit string) string {
 	if stop.Beyond {
-		return plain(stop.MW) + " " + unit + " or more"
+		return plain(stop.MW) + " " + unit
 	}
 	return "about " + round(stopMW(stop, r)) + " " + unit
 }
