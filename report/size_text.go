@@ -70,7 +70,7 @@ func sizeLooked(p *page, s *size.Study, gap float64) {
 	first, last := c.Times[s.Hours[0]], c.Times[s.Hours[len(s.Hours)-1]]
 	p.line("%s, %s to %s UTC", conditions(s), minute(first), minute(last))
 	best := &s.Results[s.Best[size.System]]
-	p.text(fmt.Sprintf("%s in %s (who holds the same is one); gap %s %%. The saving at %s is known to lie between %s and %s %s a year.", plural(len(s.Plan.Points), "design"), plural(s.Plan.Cases(), "case"),
+	p.text(fmt.Sprintf("%s in %s (who holds the same is one); gap %s %%. Given the gaps, the saving at %s lies between %s and %s %s a year.", plural(len(s.Plan.Points), "design"), plural(s.Plan.Cases(), "case"),
 		plain(100*gap), designWords(s, best), amount(best.Year.SavingAtLeast), amount(best.Year.SavingAtMost), c.Currency), "")
 	short := 0.0
 	for i := range s.Results {
