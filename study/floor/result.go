@@ -22,7 +22,7 @@ type Result struct {
 // Year is what the hours show. Sums are over the hours looked at.
 type Year struct {
 	Hours []*Hour
-	Scale float64 // a year's hours for each one looked at
+	Scale float64 // a year's hours for each one looked at; 1 where all of the case's were
 
 	Short     int // hours that cannot be made secure; they count nowhere else
 	Lacking   int // hours in which the bare dispatch has too little online
@@ -46,7 +46,8 @@ type Year struct {
 // When is what the hours of one month and hour of the day (UTC) show.
 type When struct {
 	Hours, Lacking int
-	GapMWs         float64 // sum
+	Known          int     // of Lacking, those that some kinetic energy would help
+	GapMWs         float64 // their sum
 	MostGapMWs     float64
 }
 
@@ -95,7 +96,10 @@ func (s *Study) Result(items *work.Items[Item]) *Result {
 }
 
 func (s *Study) year(kept [][]Kept) *Year {
-	y := &Year{Hours: s.hours, Scale: HoursAYear / float64(len(s.hours)), MostGapAt: -1}
+	y := &Year{Hours: s.hours, Scale: 1, MostGapAt: -1}
+	if len(s.hours) < s.c.Hours() {
+		y.Scale = HoursAYear / float64(len(s.hours))
+	}
 	for i, h := range s.hours {
 		if h.Short {
 			y.Short++
@@ -112,6 +116,7 @@ func (s *Study) year(kept [][]Kept) *Year {
 		if gap := h.Bare.GapMWs(); math.IsInf(gap, 1) {
 			y.NoInertia++
 		} else {
+			at.Known++
 			at.GapMWs += gap
 			at.MostGapMWs = max(at.MostGapMWs, gap)
 			y.MeanGapMWs += gap
@@ -185,4 +190,12 @@ func (s *Study) ruleCost(r int, kept [][]Kept) RuleCost {
 		c.MixMWs /= float64(c.Kept)
 	}
 	return c
+}
+
+// MeanGapMWs is the mean over the hours that lack a known amount.
+func (w *When) MeanGapMWs() float64 {
+	if w.Known == 0 {
+		return 0
+	}
+	return w.GapMWs / float64(w.Known)
 }

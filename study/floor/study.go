@@ -140,13 +140,16 @@ func (s *Study) settle() {
 	others := slices.Clone(s.ask.HeldMW)
 	for i, mw := range others {
 		if math.IsNaN(mw) {
-			others[i] = s.heldMW(i, 0.5)
+			others[i] = s.usualMW(i)
 		}
 	}
 	for _, a := range axes {
 		held := a.Held
 		if !held.set() {
-			top := s.heldMW(a.Shape, 1)
+			top := 0.0
+			for _, h := range s.hours {
+				top = max(top, h.Held[a.Shape])
+			}
 			if len(s.hours) == 0 || top < 1 {
 				top = s.plants[a.Shape].capMW
 			}
@@ -189,13 +192,20 @@ func (s *Study) mostHeld() int {
 	return best
 }
 
-// heldMW is a quantile of what is held of a shape over the hours' mixes; nothing without hours.
-func (s *Study) heldMW(shape int, quantile float64) float64 {
-	var held []float64
+// usualMW is the median of what is held of a shape in the tenth of the hours with the largest
+// losses: the mixes that floors are asked of. It is nothing without hours.
+func (s *Study) usualMW(shape int) float64 {
+	var lost, held []float64
 	for _, h := range s.hours {
-		held = append(held, h.Held[shape])
+		lost = append(lost, h.Mix.LargestMW)
 	}
-	return quantileOf(held, quantile)
+	from := quantileOf(lost, 0.9)
+	for _, h := range s.hours {
+		if h.Mix.LargestMW >= from {
+			held = append(held, h.Held[shape])
+		}
+	}
+	return quantileOf(held, 0.5)
 }
 
 // quantileOf is the least value that a share of all does not pass; 0 of none. It sorts the values.
