@@ -53,6 +53,7 @@ func newCharter(c *fleet.Case, s *solve.Solver, p []plant) *charter {
 func (x *charter) row(k *Chart, loss int) []Cell {
 	out := make([]Cell, k.Held.N)
 	damping := x.closed.c.Load.DampingPctPerHz / 100 * k.LoadMW
+	ratio := 1.0 // of what closed loop and the rows ask for in the cell before
 	for i := range out {
 		c := &out[i]
 		c.LossMW, c.HeldMW = k.Loss.At(loss), k.Held.At(i)
@@ -61,7 +62,10 @@ func (x *charter) row(k *Chart, loss int) []Cell {
 		c.Rows = x.floors.Least(c.LossMW, x.held, damping)
 		x.closed.online(x.held, k.LoadMW)
 		var v verdict
-		c.Closed, v = x.closed.least(c.LossMW, c.Rows.MWs)
+		c.Closed, v = x.closed.least(c.LossMW, ratio*c.Rows.MWs)
+		if ratio = c.Closed / c.Rows.MWs; !(ratio > 0.1 && ratio < 10) {
+			ratio = 1
+		}
 		c.ClosedBy, c.ClosedAtS = v.by, v.atS
 		c.FloorMWs, c.By, c.AtS = c.Rows.MWs, c.Rows.By, c.Rows.At.ToS
 		if c.Closed > c.FloorMWs || math.IsInf(c.Closed, 1) && !math.IsInf(c.FloorMWs, 1) {

@@ -107,27 +107,26 @@ func (x *closed) try(lossMW, mws float64) verdict {
 const (
 	closedWithin = 1e-3 // of the floor
 	closedMost   = 20   // times what RoCoF alone asks for: with more, nothing happens within the time looked at
+	closedLeast  = 0.02 // times the same: no less is tried, as it means next to nothing and takes long
 )
 
 // least bisects for the least kinetic energy with which the simulation keeps every limit, starting
-// from what the rows ask for. It gives what the limit nearest to being passed is there.
-func (x *closed) least(lossMW, rowsMWs float64) (mws float64, v verdict) {
+// from a guess (+Inf: none). It gives the limit that fails with less.
+func (x *closed) least(lossMW, guessMWs float64) (mws float64, v verdict) {
 	l := x.c.Limits
 	alone := lossMW * l.NominalHz / (2 * l.MaxHzPerS)
 	most := closedMost * max(alone, 1)
-	if !math.IsInf(rowsMWs, 1) {
-		most = max(most, 2*rowsMWs)
+	high := alone
+	if !math.IsInf(guessMWs, 1) {
+		high = guessMWs
+		most = max(most, 2*high)
 	}
-	high := rowsMWs
-	if math.IsInf(high, 1) {
-		high = alone
-	}
-	high = max(high, alone/100)
+	high = max(high, closedLeast*alone)
 	at := x.try(lossMW, high)
 	low, failed := high, at
 	if at.holds {
 		for step := 1.02; at.holds; step *= step {
-			if low /= step; low < alone/1000 { // next to none is enough
+			if low /= step; low < closedLeast*alone {
 				return high, at
 			}
 			if failed = x.try(lossMW, low); !failed.holds {
