@@ -25,8 +25,14 @@ func WriteFloor(dir string, r *floor.Result) error {
 	draw := func(name string, f figure) {
 		files = append(files, file{name + ".svg", f.svg}, file{name + ".png", f.png})
 	}
+	used := map[string]bool{}
 	for i := range r.Charts {
-		draw("chart-"+fileName(r.Case.Shapes[r.Charts[i].Shape].Name), floorChart(r, i))
+		name := "chart-" + fileName(r.Case.Shapes[r.Charts[i].Shape].Name)
+		if used[name] { // two names can differ in what no file name takes
+			name += "-" + strconv.Itoa(i+1)
+		}
+		used[name] = true
+		draw(name, floorChart(r, i))
 	}
 	if r.Year != nil {
 		files = append(files, file{"floor-hours.csv", func(w io.Writer) error { return floorHoursCSV(w, r) }},

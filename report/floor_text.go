@@ -61,6 +61,9 @@ func (p *floorPage) chart(i int) {
 	last := math.Inf(-1)
 	for _, n := range p.r.Instructions(i) {
 		loss, from := "", grouped(n.HeldMW, 1)+" MW or more"
+		if n.HeldMW == 0 {
+			from = "any"
+		}
 		if n.LossMW != last {
 			loss = grouped(n.LossMW, 1) + " MW"
 		}
@@ -107,7 +110,7 @@ func (p *floorPage) yearlyMoney(v float64) string { return grouped(v*p.r.Year.Sc
 
 func (p *floorPage) lacking() {
 	y := p.r.Year
-	p.section("Without limits on RoCoF and nadir, a year: what would be online and what it needs")
+	p.section("A year without limits on RoCoF and nadir: what is online and what is needed")
 	p.text("A dispatch without any limit holds no response, and then no inertia would be enough. So what is looked at is the cheapest dispatch that keeps the steady-state limit alone.", "  ")
 	if y.Short > 0 {
 		p.fact("  Left out", fmt.Sprintf("%s that cannot be made secure", hoursOf(y.Short)))
@@ -149,7 +152,10 @@ func (p *floorPage) ways() {
 		return
 	}
 	p.section("To close the gap, a year (" + p.c.Currency + " above that dispatch)")
-	p.line("  %s %s %s %s %s", padRight("way, alone", 30), padLeft("hours closed", 13), padLeft("cost in them", 13), padLeft("mix in them", 13), "")
+	row := func(name, hours, cost, within, mix string) {
+		p.line("  %s %s %s %s %s", padRight(name, 24), padLeft(hours, 13), padLeft(cost, 13), padLeft(within, 11), padLeft(mix, 13))
+	}
+	row("way, alone", "hours closed", "cost there", "", "mix there")
 	for _, k := range []struct {
 		name string
 		w    *floor.WayCost
@@ -158,12 +164,12 @@ func (p *floorPage) ways() {
 		{"cut the largest loss", &y.Ways[floor.Smaller]}, {"cheapest mix of all", &y.Mix},
 	} {
 		if k.w.Hours == 0 {
-			p.line("  %s %s", padRight(k.name, 30), padLeft("0", 13))
+			row(k.name, "0", "", "", "")
 			continue
 		}
-		p.line("  %s %s %s %s  ± %s", padRight(k.name, 30), padLeft(p.yearly(k.w.Hours), 13), padLeft(p.yearlyMoney(k.w.Cost), 13), padLeft(p.yearlyMoney(k.w.MixCost), 13), p.yearlyMoney(k.w.Within))
+		row(k.name, p.yearly(k.w.Hours), p.yearlyMoney(k.w.Cost), "± "+p.yearlyMoney(k.w.Within), p.yearlyMoney(k.w.MixCost))
 	}
-	p.text(fmt.Sprintf("By the rows; ±: the gaps to which hours are solved. The mix's proof in closed loop adds %s. Hours that a way alone does not close are not in its cost.", p.yearlyMoney(y.MendCost)), "  ")
+	p.text(fmt.Sprintf("Alone: the largest loss, who runs and what is held stay as they are, but for what is named. Mix there: what the cheapest mix costs in the hours that the way closes; the others are in no cost. ±: the gaps to which hours are solved. All by the rows; the mix's proof in closed loop adds %s.", p.yearlyMoney(y.MendCost)), "  ")
 }
 
 func (p *floorPage) policies() {

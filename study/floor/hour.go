@@ -62,7 +62,7 @@ type solvers struct {
 
 // firmly makes what lacks of a rule, and a shortfall of a limit, so dear that only what cannot be
 // had lacks. It has no say in the cost of what is kept.
-const firmly = 20
+const firmly = 1000
 
 func newSolvers(c *fleet.Case, o solve.Options) *solvers {
 	dear := *c
