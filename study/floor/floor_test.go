@@ -180,12 +180,14 @@ func TestClosedFloors(t *testing.T) {
 }
 
 // No kinetic energy is enough where the response does not carry the loss, by the rows and in closed
-// loop; a floor never falls as the loss grows.
+// loop; a floor never falls as the loss grows, and with more than it every limit holds in closed loop too.
 func TestChart(t *testing.T) {
 	c := demo(t)
 	r := studyOf(t, c, 2, nil, Words{Loss: "5:80:16", Axes: []string{"fast"}, Held: []string{"fast=0:30:4", "gas_governor=10"}, LoadMW: 300})
 	k := &r.Charts[0]
 	none := 0
+	s := New(c, r.Ask)
+	sim := &newCharter(c, s.all.secure, s.plants).closed
 	for i, cell := range k.Cells {
 		if cell.FloorMWs < cell.Rows.MWs || cell.FloorMWs < cell.Closed {
 			t.Errorf("%g MW: %g MW·s, rows %g, closed loop %g", cell.LossMW, cell.FloorMWs, cell.Rows.MWs, cell.Closed)
@@ -198,6 +200,16 @@ func TestChart(t *testing.T) {
 			}
 		} else if cell.LossMW > carried+1e-3 {
 			t.Errorf("%g MW lost, %g carried, yet %g MW·s are enough", cell.LossMW, carried, cell.Rows.MWs)
+		}
+		if !math.IsInf(cell.FloorMWs, 1) { // it is a floor: more of it holds as well
+			held := append([]float64(nil), k.Others...)
+			held[k.Shape] = cell.HeldMW
+			sim.online(held, k.LoadMW)
+			for _, more := range []float64{1, 1.3, 3} {
+				if v := sim.try(cell.LossMW, more*cell.FloorMWs); !v.holds {
+					t.Errorf("%g MW lost, %g held: the simulation passes %v with %g times the floor of %g MW·s", cell.LossMW, cell.HeldMW, v.by, more, cell.FloorMWs)
+				}
+			}
 		}
 		if i >= k.Held.N && cell.Rows.MWs < k.Cells[i-k.Held.N].Rows.MWs {
 			t.Errorf("the floor falls from %g to %g MW·s as the loss grows to %g MW", k.Cells[i-k.Held.N].Rows.MWs, cell.Rows.MWs, cell.LossMW)
