@@ -63,15 +63,8 @@ const (
 // Hour finds, prices and replays the mix of one hour, and proves it in closed loop where the
 // case has dynamic models. The only error is the context's.
 func (s *Solver) Hour(ctx context.Context, h *fleet.Hour) (Hour, error) {
-	p, q, err := s.search(ctx, h, nil)
-	if err != nil {
-		return Hour{}, err
-	}
-	out, st := s.finish(p, q, s.sys)
-	if !s.closed || s.opt.RowsOnly || s.opt.SteadyOnly || p.WithoutLimits {
-		return out, nil
-	}
-	return s.proven(ctx, h, q, st, out)
+	out, _, err := s.HourNear(ctx, h, nil)
+	return out, err
 }
 
 // finish describes, prices and replays the mix that a search has found.
@@ -297,6 +290,7 @@ func (s *Solver) replayAbove(sys *replay.System, q *search, st *state, out *Hour
 		damping *= max(0, 1-out.UnservedMW/p.Hour.DemandMW)
 	}
 	r := q.replayed(sys, st, p.OverLosses, true, damping)
+	st.replayedOver = r.outcomes
 	a.RoCoFHzPerS, a.PeakHz, a.SteadyHz = r.worst[limits.RoCoF], r.worst[limits.Nadir], r.worst[limits.Steady]
 	a.WorstLoss, a.WorstLossMW, a.PeakS = r.loss[limits.Nadir], r.deepestMW, r.deepestS
 	return r.judge(&a.Limits, limit, limits.Kind.WordAbove)

@@ -14,7 +14,7 @@ import (
 // Model writes the whole problem of one hour as MPS: every instant at which the
 // optimiser found a row, and a coarse grid of further ones, for every possible loss.
 func (s *Solver) Model(ctx context.Context, h *fleet.Hour, w io.Writer) error {
-	p, q, err := s.search(ctx, h, nil)
+	p, q, err := s.search(ctx, h, nil, nil)
 	if err != nil {
 		return err
 	}
@@ -52,8 +52,8 @@ func (s *Solver) Model(ctx context.Context, h *fleet.Hour, w io.Writer) error {
 // them: mixes that meet the balance, with damping in their rows, and all mixes without it.
 // The cheaper answer stands, with the lower of the two bounds.
 //
-// shapes, if given, replace those of the case.
-func (s *Solver) search(ctx context.Context, h *fleet.Hour, shapes []limits.Shape) (*formulate.Problem, *search, error) {
+// shapes, if given, replace those of the case. Commitments of near are tried first.
+func (s *Solver) search(ctx context.Context, h *fleet.Hour, shapes []limits.Shape, near []*Trail) (*formulate.Problem, *search, error) {
 	p := formulate.Build(s.c, h)
 	if shapes != nil {
 		p.Shapes = shapes
@@ -62,19 +62,19 @@ func (s *Solver) search(ctx context.Context, h *fleet.Hour, shapes []limits.Shap
 	if s.opt.SteadyOnly {
 		p.SteadyOnly()
 	}
-	q, met, err := s.searchOne(ctx, p)
+	q, met, err := s.searchOne(ctx, p, near)
 	if err != nil || met || p.DampingA0 == 0 || p.WithoutLimits {
 		return p, q, err
 	}
 	undamped := *p
 	undamped.DampingA0 = 0
-	q, _, err = s.searchOne(ctx, &undamped)
+	q, _, err = s.searchOne(ctx, &undamped, near)
 	if err != nil {
 		return nil, nil, err
 	}
 	served := *p
 	served.UnservedPerMWh *= offBalance
-	r, met, err := s.searchOne(ctx, &served)
+	r, met, err := s.searchOne(ctx, &served, near)
 	if err != nil {
 		return nil, nil, err
 	}
@@ -91,8 +91,9 @@ func (s *Solver) search(ctx context.Context, h *fleet.Hour, shapes []limits.Shap
 const offBalance = 1000
 
 // searchOne solves one problem and tells whether its mix meets the balance.
-func (s *Solver) searchOne(ctx context.Context, p *formulate.Problem) (*search, bool, error) {
+func (s *Solver) searchOne(ctx context.Context, p *formulate.Problem, near []*Trail) (*search, bool, error) {
 	q := newSearch(p, s.opt)
+	q.near = near
 	if err := q.run(ctx); err != nil {
 		return nil, false, err
 	}

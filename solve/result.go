@@ -58,6 +58,8 @@ type Hour struct {
 
 	Closed Closed
 
+	Settlement *Settlement // with Options.Settle
+
 	Dispatch []Dispatch // one a resource, same order as Case.Resources
 	Effort   Effort
 }

@@ -20,6 +20,8 @@ type Options struct {
 	SteadyOnly bool
 	// RowsOnly takes the rows' word for a mix: it is neither replayed nor simulated.
 	RowsOnly bool
+	// Settle settles each mix at its prices: Hour.Settlement.
+	Settle bool
 	// NodeLimit bounds the relaxations of one hour; 0: DefaultNodeLimit. An hour that
 	// reaches it is reported with the gap it has.
 	NodeLimit int
@@ -60,6 +62,7 @@ type search struct {
 	pruned float64        // least bound of the nodes given up
 	nodes  int
 	seq    int
+	near   []*Trail // mixes of neighbours, tried first
 }
 
 // node is a part of the search: bounds on the units on, and on the largest loss.
@@ -245,6 +248,7 @@ func (s *search) expand(n *node) {
 	n.basis = s.lp.Save()
 	units := s.units()
 	s.m.measure(s.lp, &s.whole) // rounding measures its own solutions
+	s.follow(n)
 	s.round(n, units)
 	if n.bound >= s.cutoff() {
 		s.prune(n.bound)

@@ -260,7 +260,7 @@ func (lp *LP) relative(r *Row, b basic) float64 {
 	}
 	s := &lp.sets[b.set]
 	g := lp.groups[s.group]
-	return r.coef(int(s.group), g, &g.Cols[b.col]) - r.coef(int(s.group), g, &g.Cols[s.key])
+	return r.Coef(int(s.group), g, &g.Cols[b.col]) - r.Coef(int(s.group), g, &g.Cols[s.key])
 }
 
 // invert builds the inverse of the working basis by Gauss-Jordan elimination with

@@ -46,9 +46,9 @@ func (lp *LP) Merit() {
 		s := &lp.sets[i]
 		g := lp.groups[s.group]
 		val := lp.price.val[s.group]
-		key := row.coef(int(s.group), g, &g.Cols[s.key])
+		key := row.Coef(int(s.group), g, &g.Cols[s.key])
 		lp.each(s, func(j int32) {
-			a := row.coef(int(s.group), g, &g.Cols[j]) - key
+			a := row.Coef(int(s.group), g, &g.Cols[j]) - key
 			if a <= 1e-9 {
 				return
 			}
@@ -74,7 +74,7 @@ func (lp *LP) supply(price float64) float64 {
 		s := &lp.sets[i]
 		if k := lp.cheapest(s); k >= 0 {
 			g := lp.groups[s.group]
-			sum += row.coef(int(s.group), g, &g.Cols[k])
+			sum += row.Coef(int(s.group), g, &g.Cols[k])
 		}
 	}
 	return sum

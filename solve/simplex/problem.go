@@ -30,8 +30,8 @@ type Own struct {
 	P, E, R, D float64
 }
 
-// coef is the coefficient of a column of group g in the row.
-func (r *Row) coef(g int, group *Group, c *Column) float64 {
+// Coef is the coefficient of a column of group g in the row.
+func (r *Row) Coef(g int, group *Group, c *Column) float64 {
 	p, e, x, d := r.P, r.E, 0.0, 0.0
 	if group.Shape >= 0 {
 		x = r.R[group.Shape]

@@ -85,7 +85,7 @@ func peer(t *testing.T, gs []*Group, sets []int, rows []*Row) float64 {
 		b[i] = r.RHS
 		for k, v := range cols {
 			g := gs[sets[v.set]]
-			a.Set(i, k, r.coef(sets[v.set], g, &g.Cols[v.j]))
+			a.Set(i, k, r.Coef(sets[v.set], g, &g.Cols[v.j]))
 		}
 		a.Set(i, len(cols)+i, -1)
 		c = append(c, r.SurplusCost)
@@ -138,7 +138,7 @@ func checkBasis(t *testing.T, lp *LP) {
 		lhs := 0.0
 		for s := range lp.sets {
 			g := lp.groups[lp.sets[s].group]
-			lp.Each(s, func(j int32, x float64) { lhs += x * r.coef(int(lp.sets[s].group), g, &g.Cols[j]) })
+			lp.Each(s, func(j int32, x float64) { lhs += x * r.Coef(int(lp.sets[s].group), g, &g.Cols[j]) })
 		}
 		if lhs < r.RHS-1e-5*(1+math.Abs(r.RHS)) {
 			t.Errorf("row %d: %g below %g", i, lhs, r.RHS)
@@ -158,7 +158,7 @@ func checkBasis(t *testing.T, lp *LP) {
 			}
 			v := g.Cols[j].Cost
 			for i, r := range lp.Rows() {
-				v -= lp.Duals()[i] * r.coef(int(st.group), g, &g.Cols[j])
+				v -= lp.Duals()[i] * r.Coef(int(st.group), g, &g.Cols[j])
 			}
 			best = min(best, v)
 		}

@@ -1,0 +1,104 @@
+package sweep
+
+import (
+	"context"
+	"math"
+	"path/filepath"
+	"reflect"
+	"testing"
+	"time"
+
+	"evenkeel/fleet"
+	"evenkeel/limits"
+	"evenkeel/solve"
+)
+
+// rungsOf adds a quick response of growing volume to the demo case.
+func rungsOf(t testing.TB, volumes ...float64) ([]*fleet.Case, []int) {
+	t.Helper()
+	c, found := fleet.Read(filepath.Join("..", "..", "testdata", "skerra", "case.yaml"))
+	if c == nil {
+		t.Fatal(found)
+	}
+	shape, err := limits.Timing{DelayS: 0.1, RampS: 0.4, HoldS: 900, WithdrawS: 10}.Shape()
+	if err != nil {
+		t.Fatal(err)
+	}
+	var rungs []*fleet.Case
+	for _, v := range volumes {
+		r := *c
+		r.Shapes = append(append([]fleet.NamedShape(nil), c.Shapes...), fleet.NamedShape{Name: "quick", Shape: shape})
+		r.Resources = append(append([]fleet.Resource(nil), c.Resources...), fleet.Resource{Name: "Quick", Kind: fleet.Demand, Count: 1,
+			Response: fleet.Response{CapMW: fleet.Value{Const: v}, PricePerMW: 1.5, Shape: len(c.Shapes)}, Down: fleet.Response{Shape: -1}})
+		rungs = append(rungs, &r)
+	}
+	return rungs, []int{len(c.Resources)}
+}
+
+// The ends of a ladder are those of a shorter one, no rung costs more than the one below, and
+// what a rung has taken over is within the gap of what it finds alone.
+func TestLadder(t *testing.T) {
+	volumes := []float64{0, 5, 10, 15, 20, 25, 30}
+	opt := solve.Options{Gap: 2e-4}
+	rungs, swept := rungsOf(t, volumes...)
+	all := NewLadder(rungs, swept, opt)
+	ends := NewLadder([]*fleet.Case{rungs[0], rungs[len(rungs)-1]}, swept, opt)
+	for _, i := range []int{17, 1200, 2900, 4312, 6050, 8100} {
+		whole, err := all.Hour(context.Background(), i)
+		if err != nil {
+			t.Fatal(err)
+		}
+		two, err := ends.Hour(context.Background(), i)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if !reflect.DeepEqual(whole[0], two[0]) || !reflect.DeepEqual(whole[len(whole)-1], two[1]) {
+			t.Errorf("hour %d: the ends differ from a ladder of the ends alone", i)
+		}
+		for k := range whole {
+			if whole[k].Status != solve.Secure {
+				t.Errorf("hour %d, rung %d: %s", i, k, whole[k].Why)
+			}
+			if held := whole[k].Dispatch[swept[0]].ResponseMW; held > volumes[k]+1e-6 {
+				t.Errorf("hour %d, rung %d holds %.3f of %.3f MW", i, k, held, volumes[k])
+			}
+			if k > 0 && k < len(whole)-1 && whole[k].Cost > whole[k-1].Cost+1e-6 {
+				t.Errorf("hour %d: rung %d costs %.3f, the one below %.3f", i, k, whole[k].Cost, whole[k-1].Cost)
+			}
+			alone, err := all.solvers[k].Hour(context.Background(), rungs[k].Hour(i, fleet.HourOptions{}))
+			if err != nil {
+				t.Fatal(err)
+			}
+			within := opt.Gap // of what the rung finds alone; mended rows are one way to be safe among several
+			if alone.Closed.Mended+whole[k].Closed.Mended > 0 {
+				within += 2e-3
+			}
+			if d := whole[k].Cost - alone.Cost; d > within*math.Abs(alone.Cost) {
+				t.Errorf("hour %d, rung %d: %.3f, alone %.3f", i, k, whole[k].Cost, alone.Cost)
+			}
+		}
+	}
+}
+
+// Ten points over the hours of a year, against one solve of the same hours.
+func BenchmarkTenPoints(b *testing.B) {
+	opt := solve.Options{Gap: 2e-4}
+	rungs, swept := rungsOf(b, 0, 4, 8, 12, 16, 20, 24, 28, 32, 36)
+	ladder, one := NewLadder(rungs, swept, opt), solve.New(rungs[0], opt)
+	var ten, single time.Duration
+	for b.Loop() {
+		for i := 0; i < rungs[0].Hours(); i += 29 {
+			start := time.Now()
+			if _, err := ladder.Hour(context.Background(), i); err != nil {
+				b.Fatal(err)
+			}
+			ten += time.Since(start)
+			start = time.Now()
+			if _, err := one.Hour(context.Background(), rungs[0].Hour(i, fleet.HourOptions{})); err != nil {
+				b.Fatal(err)
+			}
+			single += time.Since(start)
+		}
+	}
+	b.ReportMetric(ten.Seconds()/single.Seconds(), "solves")
+}
