@@ -347,7 +347,7 @@ func sensitivityFigure(s *size.Study) figure {
 
 // decimals are those that a number of an input needs.
 func decimals(v float64) int {
-	if v == math.Trunc(v) || math.Abs(v) >= 100 {
+	if v == math.Trunc(v) || math.Abs(v) >= 10 {
 		return 0
 	}
 	return 2
