@@ -59,7 +59,7 @@ func SizeText(w io.Writer, sized *Sized) error {
 	if sized.StartSpreadH > 0 {
 		note = "Hours are solved one by one, start costs spread over " + plain(sized.StartSpreadH) + " h"
 	}
-	p.text(note+". The project's costs are those of its file.", "")
+	p.text(note+". The project's costs are those of its file. Prices are those of the last MW and machines are whole, so what is earned can exceed what is saved.", "")
 	p.text(Caution, "")
 	_, err := w.Write(p.out.Bytes())
 	return err

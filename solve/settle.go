@@ -27,6 +27,7 @@ type Settled struct {
 	DownPerMW []float64 // one a shape; nil without limits above nominal
 	OverPerMW float64   // what 1 MW less of the binding losses of load saves
 	Resources []Earning // one a resource of the case, all its units together
+	Unpaid    []Unpaid  // one a resource
 	Uplift    float64   // of all resources
 	// SlackValue is what the prices pay for more of the rows than they need; marginal prices do
 	// not. With it, Uplift is the cost less the bound that the prices prove.
@@ -43,6 +44,10 @@ type Earning struct {
 	Cost, Profit, Best              float64
 	MakeWhole, LostOpportunity      float64
 }
+
+// Unpaid is what a unit of a resource is not paid of the prices, as its own loss takes along what it
+// holds: the part of its LossCharge that is for what it holds, not for its output.
+type Unpaid struct{ InertiaPerMWs, ResponsePerMW, DownPerMW float64 }
 
 // tariff is a set of row duals, summed to what the columns see.
 type tariff struct {
@@ -150,7 +155,7 @@ func (s *search) settled(rows []*simplex.Row, duals []float64, off float64) Sett
 	m := s.m
 	p := m.p
 	t := m.tariffOf(rows, duals)
-	out := Settled{Resources: make([]Earning, len(p.Hour.Units))}
+	out := Settled{Resources: make([]Earning, len(p.Hour.Units)), Unpaid: make([]Unpaid, len(p.Hour.Units))}
 	out.Prices.EnergyPerMWh = duals[0]
 	out.Prices.InertiaPerMWs = t.inertia
 	out.Prices.ResponsePerMW = append([]float64(nil), t.r[:len(p.Shapes)]...)
@@ -177,6 +182,9 @@ func (s *search) settled(rows []*simplex.Row, duals []float64, off float64) Sett
 				own.add(t.single[c], 1)
 			} else {
 				own.add(t.single[c], off)
+			}
+			if i == 0 {
+				out.Unpaid[cl.Unit] = Unpaid{own.e, own.r, own.d}
 			}
 			var unit Earning
 			s.fix.Each(m.first[c]+i, func(j int32, x float64) {

@@ -162,3 +162,25 @@ func TestSettlementOfTheDemo(t *testing.T) {
 		}
 	}
 }
+
+// Two wind farms can hold response, and the loss of the first is the only one: what it holds itself is
+// gone then, so it is paid nothing for it, while the second is paid the whole price.
+func TestWhatIsLostIsNotPaid(t *testing.T) {
+	c, found := fleet.Read(filepath.Join("testdata", "two-farms.yaml"))
+	if c == nil {
+		t.Fatal(found)
+	}
+	out, err := New(c, Options{Gap: -1, Settle: true}).Hour(context.Background(), c.Hour(0, fleet.HourOptions{}))
+	if err != nil {
+		t.Fatal(err)
+	}
+	const large, small = 1, 2
+	for name, s := range map[string]*Settled{"marginal": &out.Settlement.Marginal, "hull": &out.Settlement.Hull} {
+		price := s.Prices.ResponsePerMW[0]
+		if price <= 0 {
+			t.Errorf("%s: response has no price", name)
+		}
+		near(t, name+": the large one's", s.Unpaid[large].ResponsePerMW, price, 1e-9*price)
+		near(t, name+": the small one's", s.Unpaid[small].ResponsePerMW, 0, 1e-9)
+	}
+}

@@ -60,12 +60,16 @@ func (r Rule) Words() string {
 // prices are what an hour pays by one rule.
 type prices struct {
 	energy, inertia float64
-	response, down  []float64 // one a shape
+	response, down  float64
 }
 
-func pricesOf(h *solve.Hour) [Rules]prices {
+// pricesOf are what the project is paid: less what a host's loss would take along.
+func (plan *Plan) pricesOf(h *solve.Hour) [Rules]prices {
+	shape := plan.Project.Shape(plan.Case)
 	of := func(s *solve.Settled) prices {
-		return prices{energy: s.Prices.EnergyPerMWh, inertia: s.Prices.InertiaPerMWs, response: s.Prices.ResponsePerMW, down: s.DownPerMW}
+		gone := &s.Unpaid[plan.Resource]
+		return prices{energy: s.Prices.EnergyPerMWh, inertia: s.Prices.InertiaPerMWs - gone.InertiaPerMWs,
+			response: at(s.Prices.ResponsePerMW, shape) - gone.ResponsePerMW, down: at(s.DownPerMW, shape) - gone.DownPerMW}
 	}
 	return [Rules]prices{of(&h.Settlement.Marginal), of(&h.Settlement.Hull)}
 }
@@ -122,7 +126,7 @@ func (c *Climber) Hour(ctx context.Context, hour int) ([][]Rung, error) {
 			return nil, err
 		}
 		l := &c.plan.Ladders[i]
-		base := pricesOf(&solved[0])
+		base := c.plan.pricesOf(&solved[0])
 		bare := l.Rungs[0].Hour(hour, fleet.HourOptions{StartSpreadH: c.opt.StartSpreadH})
 		for k := range solved {
 			h := l.Rungs[k].Hour(hour, fleet.HourOptions{StartSpreadH: c.opt.StartSpreadH})
@@ -153,9 +157,8 @@ func (plan *Plan) record(h *solve.Hour, in *fleet.Hour) Rung {
 	if condenser && u.Count > 0 {
 		r.OnShare = float64(d.On) / float64(u.Count)
 	}
-	shape := plan.Project.Shape(plan.Case)
-	for rule, p := range pricesOf(h) {
-		i := Income{Response: at(p.response, shape) * d.ResponseMW, Down: at(p.down, shape) * d.DownMW, Inertia: p.inertia * d.InertiaMWs,
+	for rule, p := range plan.pricesOf(h) {
+		i := Income{Response: p.response * d.ResponseMW, Down: p.down * d.DownMW, Inertia: p.inertia * d.InertiaMWs,
 			Own: u.ResponsePerMW*d.ResponseMW + u.DownPerMW*d.DownMW + u.SyntheticPerMWs*d.InertiaMWs}
 		if condenser {
 			i.Energy, i.Own = p.energy*d.OutputMW, float64(d.On)*u.OnCost
@@ -177,10 +180,7 @@ func (plan *Plan) answer(h *fleet.Hour, p *prices) float64 {
 		best = 0
 	}
 	for _, q := range formulate.Points(u, math.Inf(1)) {
-		pay := p.energy*q.OutputMW + at(p.response, u.Shape)*q.ResponseMW + p.inertia*q.InertiaMWs
-		if q.DownMW > 0 {
-			pay += at(p.down, u.DownShape) * q.DownMW
-		}
+		pay := p.energy*q.OutputMW + p.response*q.ResponseMW + p.down*q.DownMW + p.inertia*q.InertiaMWs
 		best = max(best, pay-q.Cost)
 	}
 	return float64(u.Count) * best
