@@ -53,6 +53,9 @@ type Cell struct {
 	Rates             []Rate // one a shape; that of Primary is 1
 }
 
+// Rated tells whether something governs that primary reserve is good for, so that there are rates.
+func (c *Cell) Rated() bool { return c.Governs != Nothing && c.Governs != Beyond }
+
 // Rate is what 1 MW of a response replaces.
 type Rate struct {
 	// PrimaryMW is what the first small part of a MW replaces, a MW: the ratio of what both give

@@ -1,8 +1,6 @@
 package worth
 
 import (
-	"context"
-
 	"evenkeel/fleet"
 	"evenkeel/solve"
 )
@@ -38,33 +36,4 @@ func settlementOf(c *fleet.Case, h *solve.Hour) settlement {
 		w.Uplift += e.MakeWhole
 	}
 	return settlement{w, w}
-}
-
-type ladder struct {
-	s []*solve.Solver
-	c []*fleet.Case
-	o solve.Options
-}
-
-func newLadder(rungs []*fleet.Case, _ []int, o solve.Options) *ladder {
-	l := &ladder{c: rungs, o: o}
-	for _, c := range rungs {
-		l.s = append(l.s, solve.New(c, o))
-	}
-	return l
-}
-
-func (l *ladder) Hour(ctx context.Context, index int) ([]solve.Hour, error) {
-	out := make([]solve.Hour, len(l.c))
-	for k := range l.c {
-		h, err := l.s[k].Hour(ctx, l.c[k].Hour(index, fleet.HourOptions{StartSpreadH: l.o.StartSpreadH}))
-		if err != nil {
-			return nil, err
-		}
-		if k > 0 && k < len(l.c)-1 && out[k-1].Cost < h.Cost {
-			h = out[k-1]
-		}
-		out[k] = h
-	}
-	return out, nil
 }

@@ -119,18 +119,28 @@ func (s *Study) Tally(records []Record) *Result {
 	return r
 }
 
-func (rec *Record) mix(k int) *Mix {
+// Mix is the mix without the product (0) or with it (1).
+func (rec *Record) Mix(k int) *Mix {
 	if k == 0 {
 		return &rec.Without
 	}
 	return &rec.With
 }
 
-func (m *Mix) way(w int) *Way {
+// Way is the mix's prices one way.
+func (m *Mix) Way(w int) *Way {
 	if w == Marginal {
 		return &m.Marginal
 	}
 	return &m.Hull
+}
+
+// Down is the price of 1 MW downwards of a shape; 0 where nothing lies above nominal.
+func (w *Way) Down(shape int) float64 {
+	if shape >= len(w.DownPerMW) {
+		return 0
+	}
+	return w.DownPerMW[shape]
 }
 
 func (r *Result) points() {
@@ -228,7 +238,7 @@ func (r *Result) displaced() {
 		d := Displaced{Resource: k}
 		for i := range r.Records {
 			for w := range 2 {
-				do := r.Records[i].mix(w).Does[k]
+				do := r.Records[i].Mix(w).Does[k]
 				d.ResponseMWh[w] += float64(do.ResponseMW) * r.PerYear
 				d.OutputMWh[w] += float64(do.OutputMW) * r.PerYear
 				d.OnH[w] += float64(do.On) * r.PerYear
@@ -245,7 +255,7 @@ func (r *Result) prices(mixes int) {
 		for k := range mixes {
 			for w := range Ways {
 				for i := range r.Records {
-					v := take(r.Records[i].mix(k).way(w))
+					v := take(r.Records[i].Mix(k).Way(w))
 					p.Mean[k][w] += v / float64(len(r.Records))
 					p.Most[k][w] = max(p.Most[k][w], v)
 					if math.Abs(v) > 1e-6 {
@@ -269,9 +279,7 @@ func (r *Result) prices(mixes int) {
 		return
 	}
 	for s := range c.Shapes {
-		if slices.ContainsFunc(r.Records, func(rec Record) bool { return len(rec.Without.Marginal.DownPerMW) > s }) {
-			add("response downwards", c.Shapes[s].Name, "mw", func(w *Way) float64 { return w.DownPerMW[s] })
-		}
+		add("response downwards", c.Shapes[s].Name, "mw", func(w *Way) float64 { return w.Down(s) })
 	}
 }
 
@@ -280,7 +288,7 @@ func (r *Result) earnings(k, w int) {
 	for res := range r.Full().Resources {
 		e := Earning{With: k == 1, Way: w, Resource: res}
 		for i := range r.Records {
-			t := &r.Records[i].mix(k).way(w).Takes[res]
+			t := &r.Records[i].Mix(k).Way(w).Takes[res]
 			e.Energy += float64(t.Energy) * r.PerYear
 			e.Inertia += float64(t.Inertia) * r.PerYear
 			e.Response += float64(t.Response) * r.PerYear
@@ -295,9 +303,23 @@ func (r *Result) earnings(k, w int) {
 		r.Earnings = append(r.Earnings, e)
 	}
 	for i := range r.Records {
-		way := r.Records[i].mix(k).way(w)
+		way := r.Records[i].Mix(k).Way(w)
 		u.SlackValue += way.SlackValue * r.PerYear
 		u.Served += way.Prices.EnergyPerMWh * r.Records[i].DemandMW * r.PerYear
 	}
 	r.Uplifts = append(r.Uplifts, u)
+}
+
+// AnyShort tells whether some hour is short without the product.
+func (r *Result) AnyShort() bool { return r.Short(0) > 0 }
+
+// Short counts the hours looked at that are short at a point.
+func (r *Result) Short(point int) int {
+	n := 0
+	for i := range r.Records {
+		if r.Records[i].Points[point].Short {
+			n++
+		}
+	}
+	return n
 }

@@ -10,6 +10,7 @@ import (
 
 	"evenkeel/fleet"
 	"evenkeel/solve"
+	"evenkeel/study/sweep"
 )
 
 // Plan is what a study looks at.
@@ -78,6 +79,9 @@ type Study struct {
 	Rungs  []*fleet.Case // one a volume; the case itself without a product
 	Others []*fleet.Case // one an activation time
 	Swept  []int         // the resources that hold the product
+
+	ladder *sweep.Ladder
+	others []*solve.Solver
 }
 
 // Prepare makes a plan ready.
@@ -88,6 +92,7 @@ func (p Plan) Prepare() (*Study, error) {
 	}
 	if p.Product == nil {
 		s.Rungs = []*fleet.Case{p.Case}
+		s.begin()
 		return s, nil
 	}
 	if len(p.VolumesMW) < 2 || p.VolumesMW[0] != 0 {
@@ -115,46 +120,47 @@ func (p Plan) Prepare() (*Study, error) {
 		s.Others = append(s.Others, c)
 	}
 	s.Swept = p.Product.Holders(p.Case)
+	s.begin()
 	return s, nil
+}
+
+func (s *Study) begin() {
+	opt := s.Options
+	s.ladder = sweep.NewLadder(s.Rungs, s.Swept, opt)
+	for _, c := range s.Others {
+		s.others = append(s.others, solve.New(c, opt))
+	}
 }
 
 // Full is the case with all of the product, or the case itself without one.
 func (s *Study) Full() *fleet.Case { return s.Rungs[len(s.Rungs)-1] }
 
-// Start prepares one worker: what it gives does the i-th of the plan's hours.
-func (s *Study) Start() func(ctx context.Context, i int) (Record, error) {
-	opt := s.Options
-	others := make([]*solve.Solver, len(s.Others))
-	for k, c := range s.Others {
-		others[k] = solve.New(c, opt)
+// Hour does the i-th of the plan's hours. It is safe for concurrent use.
+func (s *Study) Hour(ctx context.Context, i int) (Record, error) {
+	index := s.Hours[i]
+	hours, err := s.ladder.Hour(ctx, index)
+	if err != nil {
+		return Record{}, err
 	}
-	steps := newLadder(s.Rungs, s.Swept, opt)
-	return func(ctx context.Context, i int) (Record, error) {
-		index := s.Hours[i]
-		hours, err := steps.Hour(ctx, index)
+	first, last := &hours[0], &hours[len(hours)-1]
+	r := Record{
+		Index: index, Time: first.Time, DemandMW: first.DemandMW, InertiaLeftMWs: first.InertiaLeftMWs, WorstLossMW: first.WorstLossMW,
+		Without: mixOf(s.Rungs[0], first),
+	}
+	if s.Product != nil {
+		r.With = mixOf(s.Full(), last)
+	}
+	for k := range hours {
+		r.Points = append(r.Points, s.point(&hours[k]))
+	}
+	for k, c := range s.Others {
+		h, err := s.others[k].Hour(ctx, c.Hour(index, fleet.HourOptions{StartSpreadH: s.Options.StartSpreadH}))
 		if err != nil {
 			return Record{}, err
 		}
-		first, last := &hours[0], &hours[len(hours)-1]
-		r := Record{
-			Index: index, Time: first.Time, DemandMW: first.DemandMW, InertiaLeftMWs: first.InertiaLeftMWs, WorstLossMW: first.WorstLossMW,
-			Without: mixOf(s.Rungs[0], first),
-		}
-		if s.Product != nil {
-			r.With = mixOf(s.Full(), last)
-		}
-		for k := range hours {
-			r.Points = append(r.Points, s.point(&hours[k]))
-		}
-		for k, c := range s.Others {
-			h, err := others[k].Hour(ctx, c.Hour(index, fleet.HourOptions{StartSpreadH: opt.StartSpreadH}))
-			if err != nil {
-				return Record{}, err
-			}
-			r.Points = append(r.Points, s.point(&h))
-		}
-		return r, nil
+		r.Points = append(r.Points, s.point(&h))
 	}
+	return r, nil
 }
 
 func (s *Study) point(h *solve.Hour) Point {
@@ -185,4 +191,14 @@ func wayOf(s *settled) Way {
 		}
 	}
 	return w
+}
+
+// Even gives n numbers from a to b at the same distance, both ends exactly.
+func Even(a, b float64, n int) []float64 {
+	v := make([]float64, n)
+	for i := range v {
+		v[i] = a + (b-a)*float64(i)/float64(n-1)
+	}
+	v[n-1] = b
+	return v
 }
