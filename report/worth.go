@@ -192,13 +192,13 @@ func governsWord(c *worth.Cell) string {
 
 func productCSV(w io.Writer, r *worth.Result) error {
 	header := []string{"volume_mw", "activation_s", "cost", "bound", "saving_gross", "paid", "saving_net", "saving_net_at_least", "saving_net_at_most", "saving_net_in_short_hours",
-		"saving_net_per_mw", "next_mw_saves", "held_mean_mw", "held_most_mw", "co2_t", "hours_short", "hours_mended", "hours_dearer"}
+		"saving_net_per_mw", "next_mw_saves", "held_mean_mw", "held_most_mw", "co2_t", "hours_short", "hours_mended"}
 	return rows(w, header, len(r.Points), func(i int) []string {
 		p := &r.Points[i]
 		return []string{fixed(p.VolumeMW, decMW), fixed(p.ActivationS, decS), fixed(p.Cost, decMoney), fixed(p.Bound, decMoney),
 			fixed(p.Gross, decMoney), fixed(p.Paid, decMoney), fixed(p.Net, decMoney), fixed(p.AtLeast, decMoney), fixed(p.AtMost, decMoney), fixed(p.InShort, decMoney),
 			fixed(p.PerMW, decMoney), undefined(p.NextPerMW, decMoney), fixed(p.MeanMW, decMW), fixed(p.MostMW, decMW), fixed(p.CO2T, decMW),
-			fixed(p.HoursShort, 1), fixed(p.HoursMended, 1), fixed(p.HoursDearer, 1)}
+			fixed(p.HoursShort, 1), fixed(p.HoursMended, 1)}
 	})
 }
 

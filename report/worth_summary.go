@@ -163,15 +163,10 @@ func worthJSON(w io.Writer, r *worth.Result, x *worth.Exchange, cells []worth.Ce
 			p := &r.Points[i]
 			j.Points = append(j.Points, pointJSON{mw(p.VolumeMW), number{p.ActivationS, decS}, money(p.Net), money(p.Gross), money(p.AtLeast), money(p.AtMost), money(p.NextPerMW), mw(p.MeanMW), mw(p.CO2T)})
 		}
-		at := 0.0
 		if o.AtGiven {
-			at = o.At
-			j.AtPrice = &number{at, decMoney}
+			j.AtPrice = &number{o.At, decMoney}
 		}
-		j.BuyMW = mw(r.VolumesMW[r.Best(at)])
-		if !o.AtGiven && r.Best(0) > 0 {
-			j.BuyMW = mw(r.VolumesMW[r.Knee(0.9)])
-		}
+		j.BuyMW = mw(r.VolumesMW[r.Choice(o.AtGiven, o.At)])
 		s.Product = j
 	}
 	return writeJSON(w, s)

@@ -72,7 +72,7 @@ func (p *worthPage) prices() {
 	}
 	p.line("%s", head)
 	for _, q := range p.r.Prices {
-		if q.Hours == [2][worth.Ways]int{} {
+		if q.Hours == [2][worth.Ways]int{} || q.Of == "response downwards" && !heldDown(p.c, q.Shape) {
 			continue
 		}
 		dec := 2
@@ -85,6 +85,13 @@ func (p *worthPage) prices() {
 		}
 		p.line("%s", text)
 	}
+}
+
+// heldDown tells whether somebody could hold a shape downwards.
+func heldDown(c *fleet.Case, shape string) bool {
+	return slices.ContainsFunc(c.Resources, func(r fleet.Resource) bool {
+		return r.Down.Shape >= 0 && c.Shapes[r.Down.Shape].Name == shape
+	})
 }
 
 func priceName(q *worth.PriceOf) string {
@@ -108,9 +115,9 @@ func (p *worthPage) earnings() {
 		u := &p.r.Uplifts[i]
 		name := worth.WayNames[u.Way] + " prices"
 		if p.r.Product != nil {
-			name += ", " + mixName(u.With)
+			name = worth.WayNames[u.Way] + ", " + mixName(u.With) + " it"
 		}
-		p.line("  %s %14s %18s %12s %10s", padRight(name, 22), grouped(u.MakeWhole, 0), grouped(u.Lost, 0), grouped(u.MakeWhole+u.Lost, 0), fixed(100*(u.MakeWhole+u.Lost)/u.Served, 2))
+		p.line("  %s %14s %18s %12s %10s", padRight(name, 20), grouped(u.MakeWhole, 0), grouped(u.Lost, 0), grouped(u.MakeWhole+u.Lost, 0), fixed(100*(u.MakeWhole+u.Lost)/u.Served, 2))
 	}
 	p.text("Of load: of what it pays for energy at those prices. By resource: earnings.csv.", "  ")
 	const listed = 8
@@ -133,11 +140,11 @@ func (p *worthPage) earnings() {
 
 func (p *worthPage) exchange() {
 	x := p.x
-	if len(x.InertiaMWs) == 0 || len(x.LossMW) == 0 {
+	loss := x.Middle()
+	if loss == 0 {
 		p.section("Exchange rates: there is no loss to compute them for")
 		return
 	}
-	loss := slices.Max(x.LossMW)
 	var cells []worth.Cell
 	for _, c := range x.Cells() {
 		if c.LossMW == loss && len(cells) < 4 {
@@ -145,7 +152,7 @@ func (p *worthPage) exchange() {
 		}
 	}
 	primary := x.Names[x.Primary]
-	p.section(fmt.Sprintf("Exchange rates after a loss of %s MW (all losses: exchange.csv)", grouped(loss, 1)))
+	p.section(fmt.Sprintf("Exchange rates after a loss of %s MW (others: exchange.csv)", grouped(loss, 1)))
 	row := func(name string, of func(c *worth.Cell) string) {
 		text := "  " + padRight(name, 30)
 		for i := range cells {
@@ -186,7 +193,7 @@ func (p *worthPage) exchange() {
 	if held == "" {
 		held = ", nothing else"
 	}
-	p.text("Rates of the next small part of a MW, with"+strings.TrimPrefix(held, ",")+" held. Where the steady state governs, what is gone by then replaces nothing, and inertia is of no help (–).", "  ")
+	p.text("Rates of the next small part of a MW, with"+strings.TrimPrefix(held, ",")+" held. What comes after the instant that governs, or is gone by then, replaces nothing; in the steady state inertia does not help (–).", "  ")
 }
 
 // rated prints a rate where there is one.
@@ -230,9 +237,9 @@ func (p *worthPage) product() {
 	if last.InShort != 0 {
 		p.fact("Short hours", fmt.Sprintf("%s of what it saves lies in hours that are short, at the prices set on shortfalls", p.money(last.InShort)))
 	}
-	if last.HoursDearer >= 0.5 {
-		p.fact("Dearer", fmt.Sprintf("%s hours a year cost more with all of it, beyond the gap: their closed loop asked for another mix", grouped(last.HoursDearer, 0)))
-	}
+	first := p.r.Prices[2+len(p.c.Shapes)-1]
+	p.fact("First MW", fmt.Sprintf("worth %s a year at the hours' marginal prices, %s at hull prices, before its own pay",
+		p.money(8760*first.Mean[0][worth.Marginal]), amount(8760*first.Mean[0][worth.Hull])))
 	p.fact("Held", heldWhen(r))
 }
 
@@ -291,8 +298,8 @@ func (p *worthPage) decision() {
 	r := p.r
 	p.line("")
 	last := len(r.VolumesMW) - 1
+	k := r.Choice(p.w.AtGiven, p.w.At)
 	if p.w.AtGiven {
-		k := r.Best(p.w.At)
 		price := amount(p.w.At) + " " + p.c.Currency + " a MW and year"
 		switch {
 		case k == 0:
@@ -306,17 +313,16 @@ func (p *worthPage) decision() {
 		}
 		return
 	}
-	if most := r.Best(0); most == 0 {
+	if k == 0 {
 		p.text("Buy none of it: no volume looked at saves more than it is paid.", "")
 		return
 	}
-	k := r.Knee(0.9)
 	next := ""
 	if k < last {
 		next = fmt.Sprintf(", and the next MW saves %s a year", p.money(r.Points[k].NextPerMW))
 	}
-	p.text(fmt.Sprintf("Buy about %s MW: they bring 90 %% of what there is to save (%s a year)%s. --at PRICE finds the volume for what a MW costs a year.",
-		plain(roundMW(r.VolumesMW[k])), p.money(r.Points[k].Net), next), "")
+	p.text(fmt.Sprintf("Buy about %s MW: they bring %s %% of what there is to save (%s a year)%s. --at PRICE finds the volume for what a MW costs a year.",
+		plain(roundMW(r.VolumesMW[k])), fixed(100*r.Points[k].Net/r.Points[r.Best(0)].Net, 0), p.money(r.Points[k].Net), next), "")
 }
 
 func roundMW(v float64) float64 { return math.Round(v*10) / 10 }

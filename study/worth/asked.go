@@ -11,15 +11,15 @@ import (
 
 // Asked says which exchange rates are wanted. The zero value asks for the usual ones.
 type Asked struct {
-	Primary    string             // shape; empty: the held one that never withdraws and is slowest to be all out
+	Primary    string             // shape; empty: of those held that never withdraw the slowest
 	HeldMW     map[string]float64 // of other shapes, by name
 	InertiaMWs []float64          // empty: the 10th, 50th and 90th percentile of what the worst loss leaves
-	LossMW     []float64          // empty: quarters of the largest worst loss
+	LossMW     []float64          // empty: the same percentiles of the worst losses, and the largest
 }
 
 // Exchange prepares the exchange rates of a study: of every shape that somebody holds, of the product
-// and of its other activation times against the primary response, where they are faster. Where
-// none is said, kinetic energies and losses are left open; see Levels.
+// and of its other activation times against the primary response. Where none is said, kinetic
+// energies and losses are left open; see Levels.
 func (s *Study) Exchange(a Asked) (*Exchange, error) {
 	c := s.Full()
 	x := &Exchange{
@@ -42,12 +42,12 @@ func (s *Study) Exchange(a Asked) (*Exchange, error) {
 		}
 	} else {
 		for i, n := range c.Shapes {
-			if held[i] && !n.Shape.Withdraws() && (primary < 0 || n.Shape.FullActivationS() > c.Shapes[primary].Shape.FullActivationS()) {
+			if held[i] && !n.Shape.Withdraws() && (primary < 0 || mostlyOutS(n.Shape) > mostlyOutS(c.Shapes[primary].Shape)) {
 				primary = i
 			}
 		}
 		if primary < 0 {
-			return nil, fmt.Errorf("no response that is held stays for ever, so that none can be the primary one by itself; name one of %s", names(c.Shapes, held))
+			return nil, fmt.Errorf("no response that is held is never withdrawn, so that none can be the primary one by itself; name one of %s", names(c.Shapes, held))
 		}
 	}
 	for name, mw := range a.HeldMW {
@@ -60,24 +60,39 @@ func (s *Study) Exchange(a Asked) (*Exchange, error) {
 			return nil, fmt.Errorf("%g MW of %q are held; want 0 or more", mw, name)
 		}
 	}
-	slowest := c.Shapes[primary].Shape.FullActivationS()
 	add := func(name string, sh limits.Shape, mw float64) {
 		x.Names, x.Shapes, x.HeldMW = append(x.Names, name), append(x.Shapes, sh), append(x.HeldMW, mw)
 	}
 	add(c.Shapes[primary].Name, c.Shapes[primary].Shape, 0)
 	for i, n := range c.Shapes {
 		mw, said := a.HeldMW[n.Name]
-		if i != primary && (said || held[i] && n.Shape.FullActivationS() < slowest) {
+		if i != primary && (said || held[i]) {
 			add(n.Name, n.Shape, mw)
 		}
 	}
 	for k, other := range s.Others {
 		sh := other.Shapes[len(other.Shapes)-1]
-		if sh.Shape.FullActivationS() < slowest {
-			add(fmt.Sprintf("%s in %g s", sh.Name, s.ActivationsS[k]), sh.Shape, 0)
-		}
+		add(fmt.Sprintf("%s in %g s", sh.Name, s.ActivationsS[k]), sh.Shape, 0)
 	}
 	return x, x.Check()
+}
+
+// mostlyOutS is when a shape first delivers 90 % of all: how fast it is, as that of a governor takes
+// for ever to deliver the last of it (share: common practice).
+func mostlyOutS(s limits.Shape) float64 {
+	const share = 0.9
+	knots := s.Knots()
+	for i, k := range knots {
+		if k.Share < share {
+			continue
+		}
+		if i == 0 || k.S == knots[i-1].S {
+			return k.S
+		}
+		a := knots[i-1]
+		return a.S + (k.S-a.S)*(share-a.Share)/(k.Share-a.Share)
+	}
+	return s.FullActivationS()
 }
 
 func names(shapes []fleet.NamedShape, which []bool) string {
@@ -106,31 +121,36 @@ func anyAbove0(v fleet.Value) bool {
 // Levels fills in the kinetic energies and losses that were not asked for from what the hours without
 // the product show. No loss at all leaves an exchange without cells.
 func (x *Exchange) Levels(records []Record) {
-	if len(x.InertiaMWs) == 0 {
-		for _, share := range []float64{0.1, 0.5, 0.9} {
-			e := roundTo3(Quantile(lefts(records), share))
-			if e > 0 && !slices.Contains(x.InertiaMWs, e) {
-				x.InertiaMWs = append(x.InertiaMWs, e)
+	fill := func(list []float64, of func(rec *Record) float64, shares ...float64) []float64 {
+		if len(list) > 0 {
+			return list
+		}
+		v := valuesOf(records, of)
+		for _, share := range shares {
+			if q := roundTo3(Quantile(v, share)); q > 0 && !slices.Contains(list, q) {
+				list = append(list, q)
 			}
 		}
+		return list
 	}
-	if len(x.LossMW) == 0 {
-		most := 0.0
-		for i := range records {
-			most = max(most, records[i].WorstLossMW)
-		}
-		for k := 1; k <= 4; k++ {
-			if p := roundTo3(most * float64(k) / 4); p > 0 && !slices.Contains(x.LossMW, p) {
-				x.LossMW = append(x.LossMW, p)
-			}
-		}
-	}
+	x.InertiaMWs = fill(x.InertiaMWs, left, 0.1, 0.5, 0.9)
+	x.LossMW = fill(x.LossMW, func(rec *Record) float64 { return rec.WorstLossMW }, 0.1, 0.5, 0.9, 1)
 }
 
-func lefts(records []Record) []float64 {
+// Middle is the loss to look at first: the one in the middle of those asked for; 0 where there is none.
+func (x *Exchange) Middle() float64 {
+	if len(x.LossMW) == 0 || len(x.InertiaMWs) == 0 {
+		return 0
+	}
+	return Quantile(x.LossMW, 0.5)
+}
+
+func left(rec *Record) float64 { return rec.InertiaLeftMWs }
+
+func valuesOf(records []Record, of func(rec *Record) float64) []float64 {
 	v := make([]float64, len(records))
 	for i := range records {
-		v[i] = records[i].InertiaLeftMWs
+		v[i] = of(&records[i])
 	}
 	return v
 }
@@ -153,7 +173,7 @@ func roundTo3(v float64) float64 {
 
 // Course is the exchange at one loss over many kinetic energies, for a figure.
 func (x *Exchange) Course(lossMW float64, records []Record, n int) []Cell {
-	v := lefts(records)
+	v := valuesOf(records, left)
 	lo, hi := Quantile(v, 0), Quantile(v, 1)
 	for _, e := range x.InertiaMWs {
 		lo, hi = min(lo, e), max(hi, e)

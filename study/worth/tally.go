@@ -80,7 +80,6 @@ type YearPoint struct {
 	CO2T            float64
 	HoursShort      float64 // a year
 	HoursMended     float64
-	HoursDearer     float64 // in which the cost is above that without the product by more than the gap allows
 }
 
 // HourOfDay is the product by the hour of the day (UTC), at the last volume.
@@ -168,9 +167,8 @@ func (r *Result) points() {
 			}
 			p.HoursShort += one(at.Short)
 			p.HoursMended += one(at.Mended)
-			p.HoursDearer += one(at.Cost > zero.Cost+max(r.Options.Gap, 0)*math.Abs(zero.Cost)+1e-6)
 		}
-		for _, v := range []*float64{&p.Cost, &p.Bound, &p.Paid, &p.CO2T, &p.Net, &p.AtLeast, &p.AtMost, &p.InShort, &p.HoursShort, &p.HoursMended, &p.HoursDearer} {
+		for _, v := range []*float64{&p.Cost, &p.Bound, &p.Paid, &p.CO2T, &p.Net, &p.AtLeast, &p.AtMost, &p.InShort, &p.HoursShort, &p.HoursMended} {
 			*v *= r.PerYear
 		}
 		p.Gross = p.Net + p.Paid
@@ -322,4 +320,20 @@ func (r *Result) Short(point int) int {
 		}
 	}
 	return n
+}
+
+// KneeShare is the share of all that there is to save at which a volume is said to be enough where no
+// price is given.
+const KneeShare = 0.9
+
+// Choice is the volume to buy, as an index: by price where one is given, else the first that brings
+// KneeShare of the most; 0 where nothing is to be saved.
+func (r *Result) Choice(priced bool, pricePerMWYear float64) int {
+	switch {
+	case priced:
+		return r.Best(pricePerMWYear)
+	case r.Best(0) == 0:
+		return 0
+	}
+	return r.Knee(KneeShare)
 }

@@ -126,7 +126,9 @@ func (p Plan) Prepare() (*Study, error) {
 
 func (s *Study) begin() {
 	opt := s.Options
+	opt.Settle = true
 	s.ladder = sweep.NewLadder(s.Rungs, s.Swept, opt)
+	opt.Settle = false
 	for _, c := range s.Others {
 		s.others = append(s.others, solve.New(c, opt))
 	}
@@ -145,10 +147,10 @@ func (s *Study) Hour(ctx context.Context, i int) (Record, error) {
 	first, last := &hours[0], &hours[len(hours)-1]
 	r := Record{
 		Index: index, Time: first.Time, DemandMW: first.DemandMW, InertiaLeftMWs: first.InertiaLeftMWs, WorstLossMW: first.WorstLossMW,
-		Without: mixOf(s.Rungs[0], first),
+		Without: mixOf(first),
 	}
 	if s.Product != nil {
-		r.With = mixOf(s.Full(), last)
+		r.With = mixOf(last)
 	}
 	for k := range hours {
 		r.Points = append(r.Points, s.point(&hours[k]))
@@ -157,6 +159,10 @@ func (s *Study) Hour(ctx context.Context, i int) (Record, error) {
 		h, err := s.others[k].Hour(ctx, c.Hour(index, fleet.HourOptions{StartSpreadH: s.Options.StartSpreadH}))
 		if err != nil {
 			return Record{}, err
+		}
+		// Nobody must hold the product: the mix without it will do as well.
+		if first.Status == h.Status && first.Cost < h.Cost || first.Status == solve.Secure && h.Status != solve.Secure {
+			h = *first
 		}
 		r.Points = append(r.Points, s.point(&h))
 	}
@@ -172,8 +178,8 @@ func (s *Study) point(h *solve.Hour) Point {
 	return p
 }
 
-func mixOf(c *fleet.Case, h *solve.Hour) Mix {
-	st := settlementOf(c, h)
+func mixOf(h *solve.Hour) Mix {
+	st := h.Settlement
 	m := Mix{Marginal: wayOf(&st.Marginal), Hull: wayOf(&st.Hull), Does: make([]Doing, len(h.Dispatch))}
 	for i, d := range h.Dispatch {
 		m.Does[i] = Doing{float32(d.On), float32(d.OutputMW), float32(d.ResponseMW)}
@@ -181,7 +187,7 @@ func mixOf(c *fleet.Case, h *solve.Hour) Mix {
 	return m
 }
 
-func wayOf(s *settled) Way {
+func wayOf(s *solve.Settled) Way {
 	w := Way{Prices: s.Prices, DownPerMW: s.DownPerMW, Uplift: s.Uplift, SlackValue: s.SlackValue, Takes: make([]Take, len(s.Resources))}
 	w.Prices.ResponsePerMW = slices.Clone(s.Prices.ResponsePerMW)
 	for i, e := range s.Resources {
