@@ -22,7 +22,7 @@ type WorthOptions struct {
 // WorthLoss says how the largest loss is treated in convex hull prices.
 const WorthLoss = "The largest loss under hull prices: every possible loss has rows of its own, in which what is lost " +
 	"counts by its output and is paid nothing for what goes with it. In the hull a fraction of a machine is a fraction of a " +
-	"loss, so hull prices of a loss are low. At both prices the unit whose loss binds pays for it."
+	"loss, so that where machines are the largest loss its hull price is low. At both prices the unit whose loss binds pays for it."
 
 // WriteWorth writes all files of a study of worth but about.json, summary.json last.
 func WriteWorth(dir string, r *worth.Result, x *worth.Exchange, o WorthOptions) error {

@@ -5,6 +5,7 @@ import (
 	"image/color"
 	"math"
 	"slices"
+	"strings"
 
 	"gonum.org/v1/plot"
 	"gonum.org/v1/plot/vg"
@@ -26,6 +27,16 @@ func dashes(hex uint32, points float64) draw.LineStyle {
 
 // wayStyles are the lines of marginal and of hull prices.
 var wayStyles = [worth.Ways]draw.LineStyle{solid(0x0072B2, 1.7), dashes(0xD55E00, 1.7)}
+
+// hoursShown says which hours a figure shows.
+func hoursShown(r *worth.Result, o WorthOptions) string {
+	const date = "2 January 2006"
+	s := fmt.Sprintf("%s, %s to %s", hoursOf(len(r.Records)), r.Records[0].Time.UTC().Format(date), r.Records[len(r.Records)-1].Time.UTC().Format(date))
+	if o.Sample {
+		s += ", a sample"
+	}
+	return s
+}
 
 // pricesShown is the share of hours that a price axis must reach.
 const pricesShown = 0.995
@@ -95,7 +106,7 @@ func worthPricesFigure(r *worth.Result, o WorthOptions) figure {
 		}
 		plots[i] = p
 	}
-	below := lookedAt(r, o) + "; axes reach what all but 0.5 % of the hours have"
+	below := hoursShown(r, o) + "; the dearest 0.5 % of them may leave the axes"
 	if r.Product != nil {
 		below = "without the product; " + below
 	}
@@ -139,17 +150,50 @@ type strip struct{ cells []worth.Cell }
 
 func (s strip) Plot(c draw.Canvas, p *plot.Plot) {
 	tx, _ := p.Transforms(&c)
-	for i := range s.cells {
-		lo, hi := s.cells[i].InertiaMWs, s.cells[i].InertiaMWs
+	for i := 0; i < len(s.cells); {
+		j := i
+		for j+1 < len(s.cells) && governColor(&s.cells[j+1]) == governColor(&s.cells[i]) {
+			j++
+		}
+		lo, hi := s.cells[i].InertiaMWs, s.cells[j].InertiaMWs
 		if i > 0 {
 			lo = (lo + s.cells[i-1].InertiaMWs) / 2
 		}
-		if i+1 < len(s.cells) {
-			hi = (hi + s.cells[i+1].InertiaMWs) / 2
+		if j+1 < len(s.cells) {
+			hi = (hi + s.cells[j+1].InertiaMWs) / 2
 		}
 		x0, x1, y0 := tx(lo/1000), tx(hi/1000), c.Min.Y
 		c.FillPolygon(governColor(&s.cells[i]), []vg.Point{{X: x0, Y: y0}, {X: x1, Y: y0}, {X: x1, Y: y0 + vg.Points(6)}, {X: x0, Y: y0 + vg.Points(6)}})
+		i = j + 1
 	}
+}
+
+// rateColors are none of those of the limits.
+var rateColors = []uint32{0xCC79A7, 0x56B4E9, 0xD55E00, 0x332288, 0x117733, 0xDDCC77, 0x882255, 0x44AA99, 0x999933, 0x88CCEE}
+
+// rateStyles gives the lines of an exchange: the product and its other activation times black.
+func rateStyles(r *worth.Result, x *worth.Exchange) []draw.LineStyle {
+	var styles []draw.LineStyle
+	dash := []vg.Length{vg.Points(7), vg.Points(2)}
+	others, variants := 0, 0
+	for s := range x.Shapes {
+		switch {
+		case s == x.Primary:
+			styles = append(styles, dashes(0x888888, 1.6))
+		case r.Product != nil && strings.HasPrefix(x.Names[s], r.Product.Name):
+			style := solid(0x000000, 1.8)
+			if variants > 0 {
+				style.Width = vg.Points(1.2)
+				style.Dashes = []vg.Length{dash[0] / vg.Length(variants), dash[1]}
+			}
+			variants++
+			styles = append(styles, style)
+		default:
+			styles = append(styles, solid(rateColors[others%len(rateColors)], 1.8))
+			others++
+		}
+	}
+	return styles
 }
 
 const courseCells = 161
@@ -160,19 +204,20 @@ func exchangeFigure(r *worth.Result, x *worth.Exchange) figure {
 	loss := x.Middle()
 	cells := x.Course(loss, r.Records, courseCells)
 	upper, lower := newPlot(), newPlot()
+	upper.Add(rules{})
+	lower.Add(rules{})
 	var key []entry
+	styles := rateStyles(r, x)
 	top := [2]float64{1, 0}
 	for s := range x.Shapes {
-		style := draw.LineStyle{Color: tripColors[s%len(tripColors)], Width: vg.Points(1.8)}
-		if s == x.Primary {
-			style = dashes(0x222222, 1.4)
-		}
+		style := styles[s]
 		key = append(key, entry{name: x.Names[s], line: ptr(style)})
 		for of, p := range []*plot.Plot{upper, lower} {
 			var line [][2]float64
 			for i := range cells {
 				c := &cells[i]
-				if !c.Rated() || of == 1 && c.InertiaPerPrimary == 0 {
+				// Within the window of RoCoF primary reserve hardly acts: its rates there mean nothing.
+				if !c.Rated() || of == 1 && c.InertiaPerPrimary == 0 || of == 0 && c.Governs == worth.ByRoCoF {
 					p.Add(path{line, style})
 					line = nil
 					continue
@@ -189,7 +234,11 @@ func exchangeFigure(r *worth.Result, x *worth.Exchange) figure {
 	}
 	seen := map[string]bool{}
 	for i := range cells {
-		if name := governsText(&cells[i]); !seen[name] {
+		name := governsText(&cells[i])
+		if cells[i].Governs == worth.ByRoCoF {
+			name += " (primary reserve comes too late)"
+		}
+		if !seen[name] {
 			seen[name] = true
 			key = append(key, entry{name: "governs: " + name, color: governColor(&cells[i])})
 		}
@@ -198,7 +247,7 @@ func exchangeFigure(r *worth.Result, x *worth.Exchange) figure {
 		p.X.Min, p.X.Max = cells[0].InertiaMWs/1000, max(cells[len(cells)-1].InertiaMWs/1000, cells[0].InertiaMWs/1000+0.001)
 		p.Y.Min, p.Y.Max = 0, roundUp(top[of])
 		p.X.Tick.Marker, p.Y.Tick.Marker = niceTicks(8), niceTicks(5)
-		p.Add(rules{}, strip{cells})
+		p.Add(strip{cells})
 	}
 	upper.Y.Label.Text = "MW of " + clip(x.Names[x.Primary], 24)
 	lower.Y.Label.Text = "MW·s of inertia"
@@ -215,6 +264,7 @@ func exchangeFigure(r *worth.Result, x *worth.Exchange) figure {
 		used := drawKeyRow(area, key)
 		area = draw.Crop(area, 0, -vg.Points(6), 0, -used-vg.Points(6))
 		half := (area.Max.Y - area.Min.Y) / 2
+		upper.Title.Text, lower.Title.Text = "MW of primary reserve for 1 MW", "MW·s of inertia for 1 MW"
 		drawStacked(upper, draw.Crop(area, 0, 0, half+vg.Points(4), 0), lower, draw.Crop(area, 0, 0, 0, -half))
 	}}
 }
@@ -282,7 +332,7 @@ func productFigure(r *worth.Result, o WorthOptions) figure {
 		why = "volume that brings 90 %"
 	}
 	key = append(key, entry{name: fmt.Sprintf("%s: %s MW", why, plain(roundMW(v))), line: &buy})
-	below := fmt.Sprintf("all out %s, %s; %s", activationWords(r.Product, r.Product.ActivationS), holdWords(r.Product), lookedAt(r, o))
+	below := fmt.Sprintf("all out %s, %s; %s", activationWords(r.Product, r.Product.ActivationS), holdWords(r.Product), hoursShown(r, o))
 	return figure{width: 9 * vg.Inch, height: 6.2 * vg.Inch, draw: func(canvas draw.Canvas) {
 		area := heading(blank(canvas), "What "+r.Product.Name+" saves: "+r.Case.Name, below)
 		used := drawKeyRow(area, key)

@@ -46,7 +46,7 @@ func worthCommand() *cobra.Command {
 	fl.Lookup("gap").DefValue = fmt.Sprint(worthGap)
 	_ = fl.Set("gap", fmt.Sprint(worthGap))
 	fl.StringVar(&f.product, "product", "", "product `FILE`")
-	fl.StringVar(&f.volumes, "volumes", "", "MW of the product there may be, N from A to B, as `A:B:N`; A is 0 (default 10 up to its cap)")
+	fl.StringVar(&f.volumes, "volumes", "", "MW of the product there may be, N from A to B, as `A:B:N`; A is 0 (default 11 up to its cap)")
 	fl.Float64SliceVar(&f.activations, "activation", nil, "look at another activation time too, at the last volume, `seconds`; can be repeated")
 	fl.StringVar(&f.primary, "primary", "", "`SHAPE` that the exchange rates count in (default: the slowest that is held and stays)")
 	fl.StringArrayVar(&f.held, "held", nil, "MW of another response held in the exchange rates, as `SHAPE=MW`; can be repeated")
@@ -133,9 +133,9 @@ func runWorth(cmd *cobra.Command, path string, f worthFlags) error {
 	return nil
 }
 
-// volumes reads A:B:N; without it ten volumes up to the most there is.
+// volumes reads A:B:N; without it none and ten volumes up to the most there is.
 func volumes(text string, most float64) ([]float64, error) {
-	a, b, n := 0.0, most, 10
+	a, b, n := 0.0, most, 11
 	if text != "" {
 		parts := strings.Split(text, ":")
 		fault := bad("--volumes is %q, want A:B:N with A 0, B above it and at most %g MW (the product's cap), N from 2 to 100", text, most)

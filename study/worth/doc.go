@@ -11,7 +11,7 @@
 //
 // The largest loss under convex hull prices: every possible loss has rows of its own, in which what
 // is lost counts by its output and is paid nothing for the inertia and the response that go with
-// it. In the hull a fraction of a machine is a fraction of a loss, so that hull prices of a loss are
-// low: the loss of a machine that is on by a third is a third of its output. The unit whose loss
-// binds pays for it, at both prices.
+// it. In the hull a fraction of a machine is a fraction of a loss, so that where machines are the
+// largest loss its hull price is low: the loss of a machine that is on by a third is a third of its
+// output. The unit whose loss binds pays for it, at both prices.
 package worth
