@@ -19,11 +19,14 @@ type Ladder struct {
 }
 
 // NewLadder prepares a ladder. All rungs have the same resources, shapes and losses; they differ
-// only in how much the resources listed in swept may do, which grows from rung to rung.
+// only in how much the resources listed in swept may do, which grows from rung to rung. Only the first
+// and the last rung are settled, if opt asks for that.
 func NewLadder(rungs []*fleet.Case, swept []int, opt solve.Options) *Ladder {
 	l := &Ladder{rungs: rungs, swept: swept, opt: opt}
-	for _, c := range rungs {
-		l.solvers = append(l.solvers, solve.New(c, opt))
+	for k, c := range rungs {
+		o := opt
+		o.Settle = opt.Settle && (k == 0 || k == len(rungs)-1)
+		l.solvers = append(l.solvers, solve.New(c, o))
 	}
 	return l
 }
