@@ -47,9 +47,9 @@ func (s *Solver) proven(ctx context.Context, h *fleet.Hour, near []*Trail, t *Tr
 			return out, q, nil
 		}
 		on := NewOnline(s.c, q.m.p.Hour, out.Dispatch, st.unserved)
-		failed := s.simulate(sim, on, q.m.p, near, t, st, &out)
+		failed := s.simulate(sim, on, q.m.p, near, t, st, &out, false)
 		if out.Above != nil && failed == nil { // the other side once this one holds
-			failed = s.simulateAbove(sim, on, q.m.p, &out)
+			failed = s.simulate(sim, on, q.m.p, near, t, st, &out, true)
 		}
 		out.Closed.Mended, out.Closed.MendedCost = mends, out.Cost-first
 		if failed == nil {
@@ -88,34 +88,40 @@ type failure struct {
 	rocofS float64
 }
 
-// simulate runs every loss and fills in out.Closed: a small one can do more harm than a large one,
-// where response that it sets off goes again. It stops at the first that fails and gives it: what
-// the rows rebuilt from that one do not cure shows in the next round.
-func (s *Solver) simulate(sim *dynamic.Simulator, on *Online, p *formulate.Problem, near []*Trail, t *Trail, st *state, out *Hour) *failure {
-	l := p.Limits
-	limit := [limits.Kinds]float64{l.MaxHzPerS, l.NadirHz, l.SteadyHz}
-	opt := s.closedOptions()
-	out.Closed = Closed{MarginHz: math.Inf(1)}
-	severity := func(rocof, nadir, steady float64) float64 {
-		return max(rocof/limit[limits.RoCoF], nadir/limit[limits.Nadir], steady/limit[limits.Steady])
+// simulate runs the losses of one side of nominal and fills in out: a small one can do more harm
+// than a large one, where response that it sets off goes again. It stops at the first that fails
+// and gives it: what the rows rebuilt from that one do not cure shows in the next round. Losses that
+// are calm in every neighbour, and in their replays here, are passed over.
+func (s *Solver) simulate(sim *dynamic.Simulator, on *Online, p *formulate.Problem, near []*Trail, t *Trail, st *state, out *Hour, over bool) *failure {
+	l, losses, replayed, side := p.Limits, p.Losses, st.replayed, 0
+	if over {
+		l, losses, replayed, side = *p.Above, p.OverLosses, st.replayedOver, 1
+	} else {
+		out.Closed = Closed{MarginHz: math.Inf(1)}
 	}
-	t.calm = make([]bool, len(p.Losses))
+	opt := s.closedOptions()
+	opt.SteadyHz = l.SteadyHz
+	calm := make([]bool, len(losses))
+	t.calm[side] = calm
 	type candidate struct {
 		index    int
-		loss     *formulate.Loss
 		trip     dynamic.Loss
 		severity float64 // of the open-loop replay, by the limit nearest to it
 	}
 	var list []candidate
-	for k := range p.Losses {
-		c := candidate{index: k, loss: &p.Losses[k], trip: s.trip(on, p, &p.Losses[k])}
-		if c.trip.MW <= 0 {
+	for k := range losses {
+		c := candidate{index: k, trip: s.trip(on, p, &losses[k])}
+		if over { // what is lost is load
+			c.trip.MW -= losses[k].FixedMW
+			on.LoseLoad(&c.trip, losses[k].FixedMW)
+		}
+		if over && c.trip.MW >= 0 || !over && c.trip.MW <= 0 {
 			continue
 		}
-		o := st.replayed[k]
-		c.severity = severity(o.RoCoFHzPerS, o.NadirHz, o.SteadyHz)
-		if c.severity < calmShare && calmNear(near, k, len(p.Losses)) {
-			t.calm[k] = true
+		o := replayed[k]
+		c.severity = swing{rocof: o.RoCoFHzPerS, peak: o.NadirHz, steady: o.SteadyHz}.severity(l)
+		if c.severity < calmShare && calmNear(near, side, k, len(losses)) {
+			calm[k] = true
 			continue
 		}
 		list = append(list, c)
@@ -123,19 +129,17 @@ func (s *Solver) simulate(sim *dynamic.Simulator, on *Online, p *formulate.Probl
 	// The worst come first.
 	slices.SortStableFunc(list, func(a, b candidate) int { return cmp.Compare(b.severity, a.severity) })
 	for _, c := range list {
-		o := sim.Run(&on.Sys, []dynamic.Loss{c.trip}, opt)
-		cl := &out.Closed
-		cl.Simulated++
-		cl.RoCoFHzPerS = max(cl.RoCoFHzPerS, o.RoCoFHzPerS)
-		cl.SteadyHz = max(cl.SteadyHz, o.SteadyHz)
-		t.calm[c.index] = severity(o.RoCoFHzPerS, o.NadirHz, o.SteadyHz) < calmShare
-		if o.NadirHz > cl.NadirHz {
-			cl.NadirHz, cl.NadirS, cl.Loss = o.NadirHz, o.NadirS, c.loss.Name
+		w := swingOf(sim.Run(&on.Sys, []dynamic.Loss{c.trip}, opt), over)
+		calm[c.index] = w.severity(l) < calmShare
+		if over {
+			a := out.Above
+			a.ClosedRoCoFHzPerS, a.ClosedPeakHz, a.ClosedSteadyHz = max(a.ClosedRoCoFHzPerS, w.rocof), max(a.ClosedPeakHz, w.peak), max(a.ClosedSteadyHz, w.steady)
+		} else {
+			out.Closed.note(&w, losses[c.index].Name, l)
 		}
-		cl.MarginHz = min(cl.MarginHz, l.NadirHz-o.NadirHz, l.SteadyHz-o.SteadyHz)
-		f := failure{loss: c.trip, sys: &on.Sys, nadirS: o.NadirS, rocofS: o.RoCoFS,
-			early:  o.RoCoFHzPerS > limit[limits.RoCoF]+closedTolHz || o.NadirHz > limit[limits.Nadir]+closedTolHz,
-			steady: o.SteadyHz > limit[limits.Steady]+closedTolHz}
+		f := failure{loss: c.trip, sys: &on.Sys, over: over, nadirS: w.peakS, rocofS: w.rocofS,
+			early:  w.rocof > l.MaxHzPerS+closedTolHz || w.peak > l.NadirHz+closedTolHz,
+			steady: w.steady > l.SteadyHz+closedTolHz}
 		if f.early || f.steady {
 			return &f
 		}
@@ -143,29 +147,29 @@ func (s *Solver) simulate(sim *dynamic.Simulator, on *Online, p *formulate.Probl
 	return nil
 }
 
-// simulateAbove does the same with the losses of load and export.
-func (s *Solver) simulateAbove(sim *dynamic.Simulator, on *Online, p *formulate.Problem, out *Hour) *failure {
-	l, a := p.Above, out.Above
-	opt := s.closedOptions()
-	opt.SteadyHz = l.SteadyHz
-	for k := range p.OverLosses {
-		loss := &p.OverLosses[k]
-		d := s.trip(on, p, loss)
-		d.MW -= loss.FixedMW // it is load
-		on.LoseLoad(&d, loss.FixedMW)
-		if d.MW >= 0 {
-			continue
-		}
-		o := sim.Run(&on.Sys, []dynamic.Loss{d}, opt)
-		a.ClosedRoCoFHzPerS, a.ClosedPeakHz, a.ClosedSteadyHz = max(a.ClosedRoCoFHzPerS, o.RiseHzPerS), max(a.ClosedPeakHz, o.PeakHz), max(a.ClosedSteadyHz, o.SteadyOverHz)
-		f := failure{loss: d, sys: &on.Sys, over: true, nadirS: o.PeakS, rocofS: o.RiseS,
-			early:  o.RiseHzPerS > l.MaxHzPerS+closedTolHz || o.PeakHz > l.NadirHz+closedTolHz,
-			steady: o.SteadyOverHz > l.SteadyHz+closedTolHz}
-		if f.early || f.steady {
-			return &f
-		}
+// swing is what a loss does to frequency on its own side of nominal, in Hz and Hz/s away from it.
+type swing struct{ rocof, rocofS, peak, peakS, steady float64 }
+
+func swingOf(o *dynamic.Outcome, over bool) swing {
+	if over {
+		return swing{o.RiseHzPerS, o.RiseS, o.PeakHz, o.PeakS, o.SteadyOverHz}
 	}
-	return nil
+	return swing{o.RoCoFHzPerS, o.RoCoFS, o.NadirHz, o.NadirS, o.SteadyHz}
+}
+
+// severity is the share of the limit that a swing comes nearest to.
+func (w swing) severity(l limits.Limits) float64 {
+	return max(w.rocof/l.MaxHzPerS, w.peak/l.NadirHz, w.steady/l.SteadyHz)
+}
+
+// note counts the swing after a loss in.
+func (c *Closed) note(w *swing, loss string, l limits.Limits) {
+	c.Simulated++
+	c.RoCoFHzPerS, c.SteadyHz = max(c.RoCoFHzPerS, w.rocof), max(c.SteadyHz, w.steady)
+	if w.peak > c.NadirHz {
+		c.NadirHz, c.NadirS, c.Loss = w.peak, w.peakS, loss
+	}
+	c.MarginHz = min(c.MarginHz, l.NadirHz-w.peak, l.SteadyHz-w.steady)
 }
 
 // trip is a loss of the hour as the simulation sees it.

@@ -290,6 +290,7 @@ func (s *Solver) replayAbove(sys *replay.System, q *search, st *state, out *Hour
 		damping *= max(0, 1-out.UnservedMW/p.Hour.DemandMW)
 	}
 	r := q.replayed(sys, st, p.OverLosses, true, damping)
+	st.replayedOver = r.outcomes
 	a.RoCoFHzPerS, a.PeakHz, a.SteadyHz = r.worst[limits.RoCoF], r.worst[limits.Nadir], r.worst[limits.Steady]
 	a.WorstLoss, a.WorstLossMW, a.PeakS = r.loss[limits.Nadir], r.deepestMW, r.deepestS
 	return r.judge(&a.Limits, limit, limits.Kind.WordAbove)

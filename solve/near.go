@@ -14,7 +14,7 @@ type Trail struct {
 	on     []int          // units on, one a resource
 	shapes []limits.Shape // as mended; nil: those of the case
 	mended int
-	calm   []bool // losses that stayed under calmShare of every limit in closed loop
+	calm   [2][]bool // losses, then those of load, that stayed under calmShare of every limit in closed loop
 }
 
 // calmShare is how much of every limit a loss may take and still be passed over on a mix between
@@ -81,12 +81,12 @@ func (s *Solver) systemOf(shapes []limits.Shape) *replay.System {
 }
 
 // calmNear tells whether a loss was calm in every neighbour.
-func calmNear(near []*Trail, loss, losses int) bool {
+func calmNear(near []*Trail, side, loss, losses int) bool {
 	if len(near) < 2 {
 		return false
 	}
 	for _, t := range near {
-		if len(t.calm) != losses || !t.calm[loss] {
+		if len(t.calm[side]) != losses || !t.calm[side][loss] {
 			return false
 		}
 	}

@@ -20,7 +20,8 @@ type state struct {
 	lack     float64               // MW·s lacking of the least inertia
 	class    []part                // all units of each class
 
-	replayed []replay.Outcome // one a loss, once replayed
+	replayed     []replay.Outcome // one a loss, once replayed
+	replayedOver []replay.Outcome // the same of losses of load
 }
 
 // part is what one class puts in.
