@@ -113,6 +113,7 @@ func worthPricesCSV(w io.Writer, r *worth.Result, mix int) error {
 			for _, s := range c.Shapes {
 				header = append(header, way+"_down_per_mw:"+s.Name)
 			}
+			header = append(header, way+"_over_loss_per_mw")
 		}
 		header = append(header, way+"_uplift")
 	}
@@ -130,6 +131,7 @@ func worthPricesCSV(w io.Writer, r *worth.Result, mix int) error {
 				for s := range c.Shapes {
 					row = append(row, fixed(p.Down(s), decPrice))
 				}
+				row = append(row, fixed(p.OverPerMW, decPrice))
 			}
 			row = append(row, fixed(p.Uplift, decMoney))
 		}

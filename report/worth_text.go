@@ -65,9 +65,9 @@ func (p *worthPage) opening() {
 func (p *worthPage) prices() {
 	with := p.r.Product != nil
 	p.section("Mean prices over the hours, " + p.c.Currency + " for an hour")
-	head := fmt.Sprintf("  %s %10s %10s", padRight("", 34), "marginal", "hull")
+	head := fmt.Sprintf("  %s %10s %10s", padRight("", 31), "marginal", "hull")
 	if with {
-		p.line("  %s %21s  %21s", padRight("", 34), "without the product", "with all of it")
+		p.line("  %s %21s  %21s", padRight("", 31), "without the product", "with all of it")
 		head += fmt.Sprintf("  %10s %10s", "marginal", "hull")
 	}
 	p.line("%s", head)
@@ -79,7 +79,7 @@ func (p *worthPage) prices() {
 		if q.Of == "inertia" {
 			dec = 4
 		}
-		text := fmt.Sprintf("  %s %10s %10s", padRight(priceName(&q), 34), grouped(q.Mean[0][worth.Marginal], dec), grouped(q.Mean[0][worth.Hull], dec))
+		text := fmt.Sprintf("  %s %10s %10s", padRight(priceName(&q), 31), grouped(q.Mean[0][worth.Marginal], dec), grouped(q.Mean[0][worth.Hull], dec))
 		if with {
 			text += fmt.Sprintf("  %10s %10s", grouped(q.Mean[1][worth.Marginal], dec), grouped(q.Mean[1][worth.Hull], dec))
 		}
@@ -104,6 +104,9 @@ func priceName(q *worth.PriceOf) string {
 		return "1 MW of " + q.Shape
 	case "response downwards":
 		return "1 MW downwards of " + q.Shape
+	}
+	if q.Of == "smaller loss of load" {
+		return "1 MW off the losses of load"
 	}
 	return "1 MW off the losses that bind"
 }
@@ -283,14 +286,22 @@ func (p *worthPage) displaced() {
 	list := slices.DeleteFunc(slices.Clone(p.r.Displaced), func(d worth.Displaced) bool { return slices.Contains(swept, d.Resource) })
 	change := func(d worth.Displaced) float64 { return d.ResponseMWh[1] - d.ResponseMWh[0] }
 	slices.SortStableFunc(list, func(a, b worth.Displaced) int { return cmp.Compare(change(a), change(b)) })
-	p.section("Who is displaced by all of it (a year, mean MW held and hours on)")
+	p.section("Who is displaced by all of it: mean MW held, and hours on a year")
+	if len(list) == 0 || change(list[0]) > -1 {
+		p.line("  nobody")
+		return
+	}
+	p.line("  %s %10s %10s  %10s %10s", padRight("", 31), "held", "with it", "on, h", "with it")
 	for i := range list[:min(len(list), 6)] {
 		d := &list[i]
 		if change(*d) > -1 {
 			break
 		}
-		p.line("  %s response %s MW to %s MW, on %s h to %s h", padRight(p.c.Resources[d.Resource].Name, 22),
-			padLeft(fixed(d.ResponseMWh[0]/8760, 2), 6), padLeft(fixed(d.ResponseMWh[1]/8760, 2), 6), padLeft(grouped(d.OnH[0], 0), 6), padLeft(grouped(d.OnH[1], 0), 6))
+		on := [2]string{}
+		if p.c.Resources[d.Resource].Kind.Machine() {
+			on = [2]string{grouped(d.OnH[0], 0), grouped(d.OnH[1], 0)}
+		}
+		p.line("  %s %10s %10s  %10s %10s", padRight(p.c.Resources[d.Resource].Name, 31), fixed(d.ResponseMWh[0]/8760, 2), fixed(d.ResponseMWh[1]/8760, 2), on[0], on[1])
 	}
 }
 

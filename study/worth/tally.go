@@ -276,6 +276,7 @@ func (r *Result) prices(mixes int) {
 	if c.Above == nil {
 		return
 	}
+	add("smaller loss of load", "", "mw", func(w *Way) float64 { return w.OverPerMW })
 	for s := range c.Shapes {
 		add("response downwards", c.Shapes[s].Name, "mw", func(w *Way) float64 { return w.Down(s) })
 	}

@@ -59,6 +59,7 @@ type Mix struct {
 type Way struct {
 	Prices             solve.Prices
 	DownPerMW          []float64 // one a shape; nil without limits above nominal
+	OverPerMW          float64   // what 1 MW less of the binding losses of load saves
 	Uplift, SlackValue float64
 	Takes              []Take // one a resource
 }
@@ -188,7 +189,7 @@ func mixOf(h *solve.Hour) Mix {
 }
 
 func wayOf(s *solve.Settled) Way {
-	w := Way{Prices: s.Prices, DownPerMW: s.DownPerMW, Uplift: s.Uplift, SlackValue: s.SlackValue, Takes: make([]Take, len(s.Resources))}
+	w := Way{Prices: s.Prices, DownPerMW: s.DownPerMW, OverPerMW: s.OverPerMW, Uplift: s.Uplift, SlackValue: s.SlackValue, Takes: make([]Take, len(s.Resources))}
 	w.Prices.ResponsePerMW = slices.Clone(s.Prices.ResponsePerMW)
 	for i, e := range s.Resources {
 		w.Takes[i] = Take{
