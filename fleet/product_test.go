@@ -153,3 +153,47 @@ func TestSkerraProductIsClean(t *testing.T) {
 		t.Errorf("%+v, found %v", p, found)
 	}
 }
+
+// Whatever a product file holds, reading ends without a panic, with a product that every volume of
+// can be put into the case or with at least one error, and each finding is one line.
+func FuzzReadProduct(f *testing.F) {
+	c, _ := readText(tiny, tinyCSV)
+	for _, text := range []string{tinyProduct, strings.ReplaceAll(tinyProduct, "load.csv:free", "20"), tinyProduct + "level_hz: 0.2\n", strings.Replace(tinyProduct, "0.2", "0.6", 1),
+		strings.Replace(tinyProduct, "hold_s: 20", "hold_s: 0", 1), "product: [", "product: &a {<<: *a}"} {
+		f.Add(text, productCSV)
+	}
+	f.Fuzz(func(t *testing.T, text, csv string) {
+		p, found := readProduct("product.yaml", c, func(path string, _ int64) ([]byte, error) {
+			if path == "product.yaml" {
+				return []byte(text), nil
+			}
+			return []byte(csv), nil
+		})
+		for _, x := range found {
+			if strings.ContainsAny(x.String(), "\n\r") {
+				t.Errorf("a finding of two lines: %q", x)
+			}
+		}
+		if (p == nil) != (len(found.Errors()) > 0) {
+			t.Fatalf("product %v, %d errors", p != nil, len(found.Errors()))
+		}
+		if p == nil {
+			return
+		}
+		for _, volume := range []float64{0, p.MostMW() / 3, p.MostMW()} {
+			with, err := p.In(c, volume, 0)
+			if err != nil {
+				t.Fatal(err)
+			}
+			for h := range c.Hours() {
+				held := 0.0
+				for _, i := range p.Holders(c) {
+					held += with.Hour(h, HourOptions{}).Units[i].ResponseCapMW
+				}
+				if want := math.Min(volume, p.CapMW.At(h)); !(math.Abs(held-want) <= 1e-9*(1+want)) {
+					t.Errorf("volume %g, hour %d: %g MW can be held, want %g", volume, h, held, want)
+				}
+			}
+		}
+	})
+}

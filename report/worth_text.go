@@ -244,6 +244,13 @@ func (p *worthPage) product() {
 	p.fact("First MW", fmt.Sprintf("worth %s a year at the hours' marginal prices, %s at hull prices, before its own pay",
 		p.money(8760*first.Mean[0][worth.Marginal]), amount(8760*first.Mean[0][worth.Hull])))
 	p.fact("Held", heldWhen(r))
+	for k := 1; k < len(r.VolumesMW); k++ {
+		if a, b := &r.Points[k-1], &r.Points[k]; b.Net < a.Net-p.w.Gap*math.Abs(a.Cost) {
+			p.fact("More saves less", fmt.Sprintf("from %s MW to %s MW, beyond the gap: with more of it hours had to be mended in closed loop. The smaller volume is the better one",
+				plain(roundMW(a.VolumeMW)), plain(roundMW(b.VolumeMW))))
+			break
+		}
+	}
 }
 
 func activationWords(q *fleet.Product, activationS float64) string {
@@ -329,8 +336,12 @@ func (p *worthPage) decision() {
 		return
 	}
 	next := ""
-	if k < last {
-		next = fmt.Sprintf(", and the next MW saves %s a year", p.money(r.Points[k].NextPerMW))
+	switch {
+	case k == last:
+	case r.Points[k].NextPerMW > 0:
+		next = fmt.Sprintf(", and the next MW saves %s %s a year", grouped(r.Points[k].NextPerMW, 0), p.c.Currency)
+	default:
+		next = ", and the next MW saves nothing"
 	}
 	p.text(fmt.Sprintf("Buy about %s MW: they bring %s %% of what there is to save (%s a year)%s. --at PRICE finds the volume for what a MW costs a year.",
 		plain(roundMW(r.VolumesMW[k])), fixed(100*r.Points[k].Net/r.Points[r.Best(0)].Net, 0), p.money(r.Points[k].Net), next), "")

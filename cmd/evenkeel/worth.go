@@ -35,7 +35,8 @@ func worthCommand() *cobra.Command {
 		Long: "Price every hour two ways (marginal, and convex hull), say what each resource earns and misses at\n" +
 			"those prices, and how much of one service replaces another. With --product FILE also run the year\n" +
 			"without that product, with it, and over volumes and activation times.\n\n" +
-			report.WorthLoss + "\n\n" +
+			"Under hull prices every possible loss has rows of its own; a fraction of a machine is a fraction of a\n" +
+			"loss there, so where machines are the largest loss its hull price is low (report/COLUMNS.md).\n\n" +
 			"An interrupt leaves whole files; --resume goes on to the same bytes. Exit codes: 0 all hours secure\n" +
 			"without the product, 3 some hours short, 2 bad input, 1 failure.",
 		Args: caseFile,
@@ -51,8 +52,11 @@ func worthCommand() *cobra.Command {
 	fl.StringVar(&f.primary, "primary", "", "`SHAPE` that the exchange rates count in (default: the slowest that is held and stays)")
 	fl.StringArrayVar(&f.held, "held", nil, "MW of another response held in the exchange rates, as `SHAPE=MW`; can be repeated")
 	fl.Float64SliceVar(&f.inertia, "inertia", nil, "kinetic energies left after the loss for the exchange rates, `MW·s`, comma-separated (default: P10, P50, P90 of the hours)")
-	fl.Float64SliceVar(&f.losses, "loss", nil, "losses for the exchange rates, `MW`, comma-separated (default: quarters of the largest)")
+	fl.Float64SliceVar(&f.losses, "loss", nil, "losses for the exchange rates, `MW`, comma-separated (default: P10, P50, P90 and the largest of the hours)")
 	fl.Float64Var(&f.at, "at", 0, "what the next MW of the product must save a year to be bought, `price` per MW and year")
+	for _, name := range []string{"activation", "inertia", "loss"} {
+		fl.Lookup(name).DefValue = "" // an empty list is no default to print
+	}
 	return cmd
 }
 
