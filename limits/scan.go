@@ -73,10 +73,7 @@ const (
 // NewScan prepares the scan of one hour. a0 (1/s) is a lower bound of D·f0/(2·E) for
 // every state that will be asked about; 0 leaves damping out. dampingMWPerHz is D.
 func NewScan(l Limits, shapes []Shape, a0, dampingMWPerHz float64) *Scan {
-	if !(a0 > 0) {
-		a0 = 0
-	}
-	s := &Scan{limits: l, shapes: shapes, a0: math.Min(a0, MaxDampingPerS), dampingMWPerHz: dampingMWPerHz}
+	s := &Scan{limits: l, shapes: shapes, dampingMWPerHz: dampingMWPerHz}
 	byS := math.Max(l.SteadyByS, 0)
 	untilS := math.Max(l.SteadyUntilS, byS)
 	steepS := math.Max(untilS, l.WindowS)
@@ -85,10 +82,9 @@ func NewScan(l Limits, shapes []Shape, a0, dampingMWPerHz float64) *Scan {
 	s.merge(horizonS, 0, byS, untilS, steepS, math.Max(l.WindowS, 0))
 	s.pieces = make([]piece, len(s.atS)-1)
 	for j := range s.pieces {
-		h := s.atS[j+1] - s.atS[j]
-		p1, p2 := pieceWeights(s.a0 * h)
-		s.pieces[j] = piece{h, math.Exp(-s.a0 * h), h * p1, h * p2}
+		s.pieces[j].h = s.atS[j+1] - s.atS[j]
 	}
+	s.damp(a0)
 	s.by = slices.Index(s.atS, byS)
 	s.until = slices.Index(s.atS, untilS)
 	s.steep = slices.Index(s.atS, steepS)
@@ -106,6 +102,19 @@ func NewScan(l Limits, shapes []Shape, a0, dampingMWPerHz float64) *Scan {
 	s.cum = make([]float64, len(s.atS))
 	s.starts = make([]onset, 0, len(s.atS)+1)
 	return s
+}
+
+// damp sets the damping rate a0, 1/s.
+func (s *Scan) damp(a0 float64) {
+	if !(a0 > 0) {
+		a0 = 0
+	}
+	s.a0 = math.Min(a0, MaxDampingPerS)
+	for j := range s.pieces {
+		p := &s.pieces[j]
+		p1, p2 := pieceWeights(s.a0 * p.h)
+		p.decay, p.c1, p.c2 = math.Exp(-s.a0*p.h), p.h*p1, p.h*p2
+	}
 }
 
 // merge lays out the nodes: the knots of all shapes and further instants, up to and with

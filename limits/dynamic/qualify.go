@@ -21,25 +21,6 @@ func (q Test) At(t float64) float64 {
 	return q.ToHz
 }
 
-// Course gives what one unit that holds all it can delivers in a test, as a share of what
-// it holds, every so many seconds from 0 on. A droop holds what it asks for at ToHz, a step
-// and synthetic inertia 1 MW, the latter for the kinetic energy that asks for it at HzPerS.
-func (s *Simulator) Course(m *Model, q Test, untilS, everyS float64) []float64 {
-	u := Unit{Model: m, N: 1, RatingMW: 1}
-	u.UpMW = 1
-	if m.DroopPct > 0 {
-		gain := m.Gain
-		if gain == 0 {
-			gain = 1
-		}
-		u.RatingMW = m.DroopPct / 100 * 50 / (gain * max(q.ToHz-m.DeadbandHz, 1e-9))
-	}
-	if m.Kind == Synthetic {
-		u.SyntheticMWs = 50 / (2 * max(q.HzPerS, 1e-9))
-	}
-	return s.Deliver(&u, 50, q.At, untilS, everyS)
-}
-
 // Deliver gives what one unit delivers while frequency follows a given course, as a share of
 // UpMW, every so many seconds. deviation is in Hz below nominal.
 func (s *Simulator) Deliver(u *Unit, nominalHz float64, deviation func(t float64) float64, untilS, everyS float64) []float64 {

@@ -133,7 +133,7 @@ func TestReferenceFastReserveQualifies(t *testing.T) {
 func qualifies(m *Model) bool {
 	var s Simulator
 	const every = 0.01
-	share := s.Course(m, Test{HzPerS: 0.24, ToHz: 0.6}, 120, every)
+	share := course(&s, m, Test{HzPerS: 0.24, ToHz: 0.6}, 120, every)
 	trigger := m.LevelHz / 0.24
 	full := map[float64]float64{0.3: 1.3, 0.4: 1.0, 0.5: 0.7}[m.LevelHz]
 	first, last := -1.0, -1.0
@@ -158,4 +158,23 @@ func qualifies(m *Model) bool {
 		least = 5
 	}
 	return last-full >= least-2*every && m.RestS <= 900
+}
+
+// course gives what one unit that holds all it can delivers in a test, as a share of what
+// it holds, every so many seconds from 0 on. A droop holds what it asks for at ToHz, a step
+// and synthetic inertia 1 MW, the latter for the kinetic energy that asks for it at HzPerS.
+func course(s *Simulator, m *Model, q Test, untilS, everyS float64) []float64 {
+	const f0 = 50
+	u := Unit{Model: m, N: 1, RatingMW: 1, UpMW: 1}
+	if m.DroopPct > 0 {
+		gain := m.Gain
+		if gain == 0 {
+			gain = 1
+		}
+		u.RatingMW = m.DroopPct / 100 * f0 / (gain * max(q.ToHz-m.DeadbandHz, 1e-9))
+	}
+	if m.Kind == Synthetic {
+		u.SyntheticMWs = f0 / (2 * max(q.HzPerS, 1e-9))
+	}
+	return s.Deliver(&u, f0, q.At, untilS, everyS)
 }

@@ -1,0 +1,148 @@
+package floor
+
+import (
+	"context"
+	"time"
+
+	"evenkeel/fleet"
+	"evenkeel/formulate"
+	"evenkeel/solve"
+)
+
+// The ways to close a gap, each alone.
+const (
+	Machines = iota // constraining machines on
+	Response        // holding more response, synthetic inertia included
+	Smaller         // cutting the largest loss
+	Ways
+)
+
+// WayNames name the ways in files.
+var WayNames = [Ways]string{"machines", "response", "loss"}
+
+// Priced is a mix as far as its cost goes: the true least cost lies between Bound and Cost.
+type Priced struct {
+	Met         bool // every limit holds by the rows, and the load is served
+	Cost, Bound float64
+}
+
+func priced(h *solve.Hour) Priced { return Priced{h.Met(), h.Cost, h.Bound} }
+
+// Hour is what an hour of the year shows.
+type Hour struct {
+	Index int
+	Time  time.Time
+
+	Mix      Need // of the secure mix
+	Short    bool // there is none
+	MixCost  Priced
+	MendCost float64 // of its cost, what closed loop added
+	Held     []float64
+
+	// Bare is the dispatch that knows the steady-state limits alone.
+	Bare     Need
+	BareCost Priced
+	Ways     [Ways]Priced // where Bare has a gap
+
+	FreeMWs float64 // online without any limit
+}
+
+// Gap tells whether the bare dispatch lacks kinetic energy by more than rounding.
+func (h *Hour) Gap() bool { return h.Bare.GapMWs() > gapTolMWs }
+
+const gapTolMWs = 0.01
+
+// solvers are those of all dispatches of an hour. They are safe for concurrent use.
+type solvers struct {
+	c                       *fleet.Case
+	spread                  float64
+	secure, rows, bare, any *solve.Solver
+	firm                    *solve.Solver // of rules
+}
+
+// firmly makes what lacks of a rule, and a shortfall of a limit, so dear that only what cannot be
+// had lacks. It has no say in the cost of what is kept.
+const firmly = 1000
+
+func newSolvers(c *fleet.Case, o solve.Options) *solvers {
+	dear := *c
+	dear.ShortPerMW *= firmly
+	s := &solvers{c: c, spread: o.StartSpreadH, secure: solve.New(c, o), firm: solve.New(&dear, o)}
+	o.RowsOnly = true
+	s.rows = solve.New(c, o)
+	o.SteadyOnly = true
+	s.bare = solve.New(c, o)
+	o.SteadyOnly, o.WithoutLimits = false, true
+	s.any = solve.New(c, o)
+	return s
+}
+
+// hour solves one hour in all its dispatches.
+func (s *solvers) hour(ctx context.Context, n *needs, index int) (*Hour, error) {
+	h := s.c.Hour(index, fleet.HourOptions{StartSpreadH: s.spread})
+	p := formulate.Build(s.c, h)
+	mix, err := s.secure.Hour(ctx, h)
+	if err != nil {
+		return nil, err
+	}
+	bare, err := s.bare.Hour(ctx, h)
+	if err != nil {
+		return nil, err
+	}
+	free, err := s.any.Hour(ctx, h)
+	if err != nil {
+		return nil, err
+	}
+	out := &Hour{Index: index, Time: h.Time, Mix: n.of(p, &mix), Short: mix.Status == solve.Short, MixCost: priced(&mix), MendCost: mix.Closed.MendedCost,
+		Held: make([]float64, len(s.c.Shapes)), Bare: n.of(p, &bare), BareCost: priced(&bare), FreeMWs: free.InertiaMWs}
+	for i := range mix.Dispatch {
+		if shape := h.Units[i].Shape; shape >= 0 {
+			out.Held[shape] += mix.Dispatch[i].ResponseMW
+		}
+	}
+	if !out.Gap() {
+		return out, nil
+	}
+	for w := range out.Ways {
+		closed, err := s.rows.Hour(ctx, way(w, h, &bare, out.Bare.LargestMW))
+		if err != nil {
+			return nil, err
+		}
+		out.Ways[w] = priced(&closed)
+	}
+	return out, nil
+}
+
+// way is the hour with no more freedom than one way to close the gap of the dispatch d needs.
+func way(w int, h *fleet.Hour, d *solve.Hour, largestMW float64) *fleet.Hour {
+	out := *h
+	out.Units = append([]fleet.Unit(nil), h.Units...)
+	for i := range out.Units {
+		u, part := &out.Units[i], &d.Dispatch[i]
+		if w != Machines && u.Commit { // who runs stays
+			u.Count, u.MustRun = part.On, true
+		}
+		if w != Response { // what is held stays
+			n := float64(max(part.On, 1))
+			synthetic := part.InertiaMWs
+			if u.Commit {
+				synthetic = 0
+			}
+			u.ResponseCapMW = min(u.ResponseCapMW, part.ResponseMW/n)
+			u.DownCapMW = min(u.DownCapMW, part.DownMW/n)
+			u.SyntheticCapMWs = min(u.SyntheticCapMWs, synthetic/n)
+		}
+	}
+	if w != Smaller && largestMW > 0 { // the largest loss stays, whatever is dispatched
+		out.Losses = append(append([]fleet.HourLoss(nil), h.Losses...), fleet.HourLoss{Name: "the largest loss as it was", FixedMW: largestMW})
+	}
+	return &out
+}
+
+// Word names what sets a floor.
+func (n *Need) Word() string {
+	if n.Over {
+		return n.By.WordAbove()
+	}
+	return n.By.Word()
+}
