@@ -1,8 +1,6 @@
 package fleet
 
 import (
-	"crypto/sha256"
-	"encoding/hex"
 	"fmt"
 	"math"
 	"path/filepath"
@@ -67,13 +65,7 @@ func readProduct(path string, c *Case, open opener) (*Product, Findings) {
 	if len(r.found.Errors()) > 0 {
 		return nil, r.found
 	}
-	sum := sha256.New()
-	sum.Write(raw)
-	for _, t := range r.files() {
-		sum.Write(t.raw)
-		p.Files = append(p.Files, t.name)
-	}
-	p.Hash = hex.EncodeToString(sum.Sum(nil))
+	p.Hash, p.Files = r.hash(raw)
 	return p, r.found
 }
 
@@ -126,12 +118,7 @@ func (r *reader) productSteps(s *section, p *Product) {
 		st := ProductStep{ToMW: g.number("to_mw", positive), PricePerMW: g.number("per_mw", notBelow0)}
 		if len(p.Steps) > 0 {
 			last := p.Steps[len(p.Steps)-1]
-			if st.ToMW <= last.ToMW {
-				g.fault("to_mw", num(st.ToMW), "more than the step before ("+num(last.ToMW)+")")
-			}
-			if st.PricePerMW < last.PricePerMW {
-				g.fault("per_mw", num(st.PricePerMW), "at least the step before ("+num(last.PricePerMW)+"): the cheapest comes first")
-			}
+			g.follows("per_mw", st.ToMW, last.ToMW, st.PricePerMW, last.PricePerMW, "the cheapest comes first")
 		}
 		p.Steps = append(p.Steps, st)
 	}

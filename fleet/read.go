@@ -93,14 +93,19 @@ func read(path string, open opener) (*Case, Findings) {
 	if len(r.found.Errors()) > 0 {
 		return nil, r.found
 	}
-	sum := sha256.New()
-	sum.Write(raw)
-	for _, t := range r.files() {
-		sum.Write(t.raw)
-		r.c.Files = append(r.c.Files, t.name)
-	}
-	r.c.Hash = hex.EncodeToString(sum.Sum(nil))
+	r.c.Hash, r.c.Files = r.hash(raw)
 	return r.c, r.found
+}
+
+// hash is the sha256 over the file itself and its series files, which it names.
+func (r *reader) hash(raw []byte) (sum string, files []string) {
+	h := sha256.New()
+	h.Write(raw)
+	for _, t := range r.files() {
+		h.Write(t.raw)
+		files = append(files, t.name)
+	}
+	return hex.EncodeToString(h.Sum(nil)), files
 }
 
 // openFile reads a regular file: a pipe or a device could block or never end.
