@@ -103,7 +103,7 @@ func priceName(q *worth.PriceOf) string {
 	case "response":
 		return "1 MW of " + q.Shape
 	case "response downwards":
-		return "1 MW downwards of " + q.Shape
+		return "1 MW down of " + q.Shape
 	}
 	if q.Of == "smaller loss of load" {
 		return "1 MW off the losses of load"
@@ -112,7 +112,7 @@ func priceName(q *worth.PriceOf) string {
 }
 
 func (p *worthPage) earnings() {
-	p.section("Uplift a year, " + p.c.Currency + ": what following the schedule costs against one's own best answer")
+	p.section("Uplift a year, " + p.c.Currency + ": what is missed by following the schedule")
 	p.line("  %s %14s %18s %12s %10s", padRight("", 20), "make-whole", "lost opportunity", "together", "% of load")
 	for i := range p.r.Uplifts {
 		u := &p.r.Uplifts[i]
