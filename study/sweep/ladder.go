@@ -39,13 +39,17 @@ type climb struct {
 	out   []solve.Hour
 	trail []*solve.Trail
 	done  []bool
+	// sure tells whether a rung's bound holds for every mix: what bounds rows that were rebuilt for one
+	// mix, as closed loop asked for it, says nothing of others.
+	sure []bool
 }
 
 // Hour solves an hour of the case on every rung. The first and the last rung are solved on their
 // own, so that they are what a single run of these two finds; a rung between takes the mix
 //
 //   - of a rung above, where it fits: what is best with more on offer and does not use it, is best;
-//   - of the rung below, where that costs no more than the bound proven above, within the gap;
+//   - of the rung below, where that costs no more than the bound proven above, within the gap (both
+//     only where nothing was mended above);
 //   - or its own, where that is cheaper than the mix of the rung below; its search starts from what
 //     the rungs on either side have found, and losses that are calm on both are not simulated again
 //     (solve.Solver.HourNear).
@@ -54,7 +58,7 @@ type climb struct {
 // that one holds can be held on it too. It is safe for concurrent use.
 func (l *Ladder) Hour(ctx context.Context, index int) ([]solve.Hour, error) {
 	n := len(l.rungs)
-	c := &climb{Ladder: l, ctx: ctx, hours: make([]*fleet.Hour, n), out: make([]solve.Hour, n), trail: make([]*solve.Trail, n), done: make([]bool, n)}
+	c := &climb{Ladder: l, ctx: ctx, hours: make([]*fleet.Hour, n), out: make([]solve.Hour, n), trail: make([]*solve.Trail, n), done: make([]bool, n), sure: make([]bool, n)}
 	for k := range c.hours {
 		c.hours[k] = l.rungs[k].Hour(index, fleet.HourOptions{StartSpreadH: l.opt.StartSpreadH})
 	}
@@ -67,6 +71,12 @@ func (l *Ladder) Hour(ctx context.Context, index int) ([]solve.Hour, error) {
 		}
 		if err := c.between(0, n-1); err != nil {
 			return nil, err
+		}
+		// What was found on the way to a rung may be dearer than what a rung below it found later.
+		for k := 1; k < n-1; k++ {
+			if better(&c.out[k-1], &c.out[k]) && c.fits(k-1, k) {
+				c.out[k] = c.taken(k-1, c.out[k].Bound)
+			}
 		}
 	}
 	return c.out, nil
@@ -83,6 +93,7 @@ func (c *climb) solve(k, below, above int) error {
 	if err != nil {
 		return err
 	}
+	c.sure[k] = h.Closed.Mended == 0
 	if below >= 0 && better(&c.out[below], &h) && c.fits(below, k) {
 		h, t = c.taken(below, h.Bound), c.trail[below]
 	}
@@ -117,10 +128,10 @@ func (c *climb) between(lo, hi int) error {
 			continue
 		}
 		switch {
-		case c.grows(k, hi) && c.fits(hi, k):
-			c.out[k], c.trail[k], c.done[k] = c.out[hi], c.trail[hi], true
-		case c.grows(k, hi) && c.fits(lo, k) && c.close(lo, hi):
-			c.out[k], c.trail[k], c.done[k] = c.taken(lo, c.out[hi].Bound), c.trail[lo], true
+		case c.sure[hi] && c.grows(k, hi) && c.fits(hi, k):
+			c.out[k], c.trail[k], c.done[k], c.sure[k] = c.out[hi], c.trail[hi], true, true
+		case c.sure[hi] && c.grows(k, hi) && c.fits(lo, k) && c.close(lo, hi):
+			c.out[k], c.trail[k], c.done[k], c.sure[k] = c.taken(lo, c.out[hi].Bound), c.trail[lo], true, true
 		default:
 			mid := (lo + hi) / 2
 			if !c.monotone(lo, hi) {
