@@ -153,6 +153,44 @@ func TestProductNeverCosts(t *testing.T) {
 	}
 }
 
+// In closed loop too: with the demo's product, which a level sets off, and with one that goes again so
+// soon that with all of it most mixes must be mended.
+func TestProductNeverCostsInClosedLoop(t *testing.T) {
+	c, found := fleet.Read("../../testdata/skerra/case.yaml")
+	if c == nil {
+		t.Fatal(found)
+	}
+	short := filepath.Join(t.TempDir(), "short.yaml")
+	if err := os.WriteFile(short, []byte(strings.Replace(quick, "hold_s: 700", "hold_s: 20", 1)), 0o666); err != nil {
+		t.Fatal(err)
+	}
+	for _, path := range []string{"../../testdata/skerra/product.yaml", short} {
+		p, found := fleet.ReadProduct(path, c)
+		if p == nil {
+			t.Fatal(found)
+		}
+		const gap = 0.0002
+		_, records := study(t, worth.Plan{Case: c, Product: p, VolumesMW: worth.Even(0, 40, 5), ActivationsS: []float64{0.25, 2},
+			Options: solve.Options{Gap: gap}, Hours: []int{33, 1461, 2500, 4870, 6331, 8279}})
+		held, mended := 0.0, 0
+		for i := range records {
+			r := &records[i]
+			for k, pt := range r.Points {
+				if zero := r.Points[0]; pt.Short || pt.Cost > zero.Cost*(1+gap) {
+					t.Errorf("%s, hour %d, point %d: short %v, %v, without it %v", p.Name, r.Index, k, pt.Short, pt.Cost, zero.Cost)
+				}
+				held += pt.HeldMW
+				if pt.Mended {
+					mended++
+				}
+			}
+		}
+		if held == 0 || mended == 0 {
+			t.Errorf("%s: %v MW held, %d hours mended: these hours test nothing", p.Name, held, mended)
+		}
+	}
+}
+
 // What is paid for energy is what the load pays; a resource's uplift is never below zero; the year's
 // sums are those of its hours.
 func TestTallyBalances(t *testing.T) {
