@@ -15,7 +15,7 @@ func TestFormatListsEveryKey(t *testing.T) {
 	}
 	words := strings.FieldsFunc(string(raw), func(r rune) bool { return r != '_' && (r < 'a' || r > 'z') && (r < '0' || r > '9') })
 	for _, keys := range [][]string{wholeKeys, frequencyKeys, rocofKeys, nadirKeys, steadyKeys, priceKeys, loadKeys, hourKeys, groupKeys, lossKeys,
-		machineKeys, converterKeys, responseKeys, syntheticKeys, stepKeys, timingKeys, projectKeys, projectSyntheticKeys, moneyKeys} {
+		machineKeys, converterKeys, responseKeys, syntheticKeys, stepKeys, timingKeys, productKeys, productStepKeys, projectKeys, projectSyntheticKeys, moneyKeys} {
 		for _, k := range keys {
 			if !slices.Contains(words, k) {
 				t.Errorf("FORMAT.md does not name %s", k)

@@ -41,7 +41,7 @@ func (r *reader) models(s *section, taken map[string]int) {
 		model, made := r.model(g)
 		m.Model = model
 		l := r.c.Limits
-		m.Test = dynamic.Test{HzPerS: l.MaxHzPerS / 2, ToHz: l.SteadyHz}
+		m.Test = usualTest(l)
 		if q := g.part("qualification", testKeys); q != nil {
 			m.Test = dynamic.Test{HzPerS: q.numberOr("hz_per_s", notBelow0, m.Test.HzPerS), ToHz: q.number("to_hz", positive)}
 		}
@@ -161,12 +161,13 @@ func (r *reader) firstShape(g *section, m *NamedModel) (limits.Shape, bool) {
 		g.fault("level_hz", num(m.Model.LevelHz), fmt.Sprintf("at most the %s Hz to which its qualification goes", num(m.Test.ToHz)))
 		return limits.Shape{}, false
 	}
-	s, err := m.triggered()
+	s, err := m.course()
 	return s, err == nil
 }
 
-// triggered is the shape of a triggered response in its qualification.
-func (m *NamedModel) triggered() (limits.Shape, error) {
+// course is what a triggered response delivers in its qualification, whose fall passes its level
+// some time after it began.
+func (m *NamedModel) course() (limits.Shape, error) {
 	c := m.Model.Course
 	if m.Test.HzPerS > 0 {
 		c.DelayS += m.Model.LevelHz / m.Test.HzPerS
@@ -182,6 +183,11 @@ func (m *NamedModel) delivered(sim *dynamic.Simulator, l limits.Limits, ratingMW
 	share := sim.Deliver(&u, l.NominalHz, m.Test.At, until, sampleS)
 	s, err = dynamic.ShapeBelow(share, sampleS, shapeWithin)
 	return s, share[len(share)-1], err
+}
+
+// usualTest is the qualification of a model without one of its own.
+func usualTest(l limits.Limits) dynamic.Test {
+	return dynamic.Test{HzPerS: l.MaxHzPerS / 2, ToHz: l.SteadyHz}
 }
 
 const (

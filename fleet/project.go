@@ -1,8 +1,6 @@
 package fleet
 
 import (
-	"crypto/sha256"
-	"encoding/hex"
 	"path/filepath"
 
 	"evenkeel/limits/dynamic"
@@ -112,7 +110,7 @@ const mostHoldS = 86_400
 func ReadProject(path string, c *Case) (*Project, Findings) { return readProject(path, c, openFile) }
 
 func readProject(path string, c *Case, open opener) (*Project, Findings) {
-	r := &reader{path: path, dir: filepath.Dir(path), open: open, c: c}
+	r := &reader{path: path, dir: filepath.Dir(path), open: open, what: "project", c: c}
 	raw, err := open(path, maxCaseBytes)
 	if err != nil {
 		r.fault(0, "", err.Error(), "a project file that can be read")
@@ -128,23 +126,15 @@ func readProject(path string, c *Case, open opener) (*Project, Findings) {
 	if len(r.found.Errors()) > 0 {
 		return nil, r.found
 	}
-	sum := sha256.Sum256(raw)
-	p.Hash = hex.EncodeToString(sum[:])
+	p.Hash, _ = r.hash(raw)
 	return p, r.found
 }
 
 func (r *reader) project(s *section, p *Project) {
 	p.Name, _ = s.text("project")
 	p.Note = s.note("note")
-	for i := range r.c.Resources {
-		if r.c.Resources[i].Name == p.Name {
-			s.fault("project", quoted(p.Name)+", a resource of the case", "a name of its own")
-		}
-	}
-	for i := range r.c.Shapes {
-		if r.c.Shapes[i].Name == p.Name {
-			s.fault("project", quoted(p.Name)+", a shape or model of the case", "a name of its own")
-		}
+	if r.c.taken(p.Name) {
+		s.fault("project", quoted(p.Name)+", a name that the case has", "a name of its own, no resource's, connection's, loss's, shape's or model's")
 	}
 	if m := s.required("money", moneyKeys); m != nil {
 		p.Money.CapitalPerMW = m.number("capital_per_mw", notBelow0)

@@ -148,7 +148,7 @@ func (p *Project) response(c *Case, activationS float64) (limits.Shape, *NamedMo
 	if p.Model < 0 && !(t.RampS >= 0) {
 		return limits.Shape{}, nil, fmt.Errorf("an activation time of %s s, shorter than delay_s (%s), which is a part of it", num(activationS), num(p.DelayS))
 	}
-	m := NamedModel{Name: p.Name, Test: dynamic.Test{HzPerS: c.Limits.MaxHzPerS / 2, ToHz: c.Limits.SteadyHz}}
+	m := NamedModel{Name: p.Name, Test: usualTest(c.Limits)}
 	switch {
 	case p.Model >= 0:
 		m.Test = c.Models[p.Model].Test
@@ -170,7 +170,7 @@ func (p *Project) response(c *Case, activationS float64) (limits.Shape, *NamedMo
 		return limits.Shape{}, nil, err
 	}
 	if m.Model.Kind == dynamic.Step {
-		s, err := m.triggered()
+		s, err := m.course()
 		return s, &m, err
 	}
 	var sim dynamic.Simulator

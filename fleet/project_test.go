@@ -149,7 +149,7 @@ func TestBadProjects(t *testing.T) {
 	for _, q := range []struct{ text, want string }{
 		{"project: P\nkind: battery\nactivation_s: 1\nhold_s: 900\nmoney: {capital_per_mw: -1, lifetime_years: 0}",
 			"money.capital_per_mw: found -1, want a number of at least 0|money.lifetime_years: found 0, want a number above 0|money.discount_pct: found nothing|money.capital_per_mwh: found nothing"},
-		{"project: Holm battery\nkind: battery\nactivation_s: 1\nhold_s: 900" + projectMoney, `"Holm battery", a resource of the case`},
+		{"project: Holm battery\nkind: battery\nactivation_s: 1\nhold_s: 900" + projectMoney, `"Holm battery", a name that the case has`},
 		{"project: P\nkind: batery\nactivation_s: 1\nhold_s: 900" + projectMoney, "kind: found \"batery\", want battery, flywheel, condenser, wind_recovery"},
 		{"project: P\nkind: condenser\ninertia_s: 5\nunit_mva: 10\nhold_s: 9\nmoney: {capital_per_mw: 1, lifetime_years: 1, discount_pct: 0}", "hold_s: found the key for a condenser"},
 		{"project: P\nkind: battery\nmodel: fsat" + projectMoney, `model: found the unknown model "fsat", want the name of a model of the case (fast?)`},
@@ -160,7 +160,7 @@ func TestBadProjects(t *testing.T) {
 		{"project: P\nkind: wind_recovery\nhost: Vestan wind\nactivation_s: 1\nhold_s: 8\nrecovery_share: 0.2\nrecovery_s: 5\nmoney: {capital_per_mw: 1, lifetime_years: 1, discount_pct: 0}", "which has a response in the case"},
 		{"project: P\nkind: wind_recovery\nhost: Sundby solar\nactivation_s: 1\nhold_s: 8\nrecovery_share: 0.2\nrecovery_s: 5\nmoney: {capital_per_mw: 1, lifetime_years: 1, discount_pct: 0}", "which is solar"},
 		{"project: P\nkind: battery\nactivation: 1\nhold_s: 900" + projectMoney, "activation: found an unknown key, want activation_s?|activation_s: found nothing"},
-		{"", "an empty file"},
+		{"", "an empty file, want a project"},
 	} {
 		p, found := projectOf(c, q.text)
 		if p != nil {

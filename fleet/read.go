@@ -51,6 +51,7 @@ type opener func(path string, most int64) ([]byte, error)
 // reader carries what is known while one case is read.
 type reader struct {
 	path, dir string
+	what      string // the file holds: case or product
 	open      opener
 	found     Findings
 	nodes     int // visited so far
@@ -76,7 +77,7 @@ type reader struct {
 
 func read(path string, open opener) (*Case, Findings) {
 	r := &reader{
-		path: path, dir: filepath.Dir(path), open: open,
+		path: path, dir: filepath.Dir(path), open: open, what: "case",
 		tables: map[string]*table{}, bounded: map[string]bool{}, names: map[string]int{},
 		c: &Case{Path: path},
 	}
@@ -92,14 +93,19 @@ func read(path string, open opener) (*Case, Findings) {
 	if len(r.found.Errors()) > 0 {
 		return nil, r.found
 	}
-	sum := sha256.New()
-	sum.Write(raw)
-	for _, t := range r.files() {
-		sum.Write(t.raw)
-		r.c.Files = append(r.c.Files, t.name)
-	}
-	r.c.Hash = hex.EncodeToString(sum.Sum(nil))
+	r.c.Hash, r.c.Files = r.hash(raw)
 	return r.c, r.found
+}
+
+// hash is the sha256 over the file itself and its series files, which it names.
+func (r *reader) hash(raw []byte) (sum string, files []string) {
+	h := sha256.New()
+	h.Write(raw)
+	for _, t := range r.files() {
+		h.Write(t.raw)
+		files = append(files, t.name)
+	}
+	return hex.EncodeToString(h.Sum(nil)), files
 }
 
 // openFile reads a regular file: a pipe or a device could block or never end.
@@ -148,14 +154,14 @@ func (r *reader) parse(raw []byte) *yaml.Node {
 	doc, err := decode(d)
 	switch {
 	case err == io.EOF, err == nil && (len(doc.Content) == 0 || isNull(doc.Content[0])):
-		r.fault(0, "", "an empty file", "a case")
+		r.fault(0, "", "an empty file", "a "+r.what)
 		return nil
 	case err != nil:
 		r.yamlFault(raw, err)
 		return nil
 	}
 	if line := deep(doc); line > 0 {
-		r.fault(line, "", fmt.Sprintf("more than %d levels of nesting", maxDepth), "the few levels that a case has")
+		r.fault(line, "", fmt.Sprintf("more than %d levels of nesting", maxDepth), "the few levels that a "+r.what+" has")
 		return nil
 	}
 	switch second, err := decode(d); {
@@ -164,7 +170,7 @@ func (r *reader) parse(raw []byte) *yaml.Node {
 		if len(second.Content) > 0 {
 			line = second.Content[0].Line
 		}
-		r.fault(line, "", "a second document", "one case a file")
+		r.fault(line, "", "a second document", "one "+r.what+" a file")
 	case err != io.EOF:
 		r.yamlFault(raw, err)
 	}

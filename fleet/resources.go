@@ -241,6 +241,16 @@ func (r *reader) ordered(s *section, in *input) {
 	}
 }
 
+// follows checks a step of a rising price against the one before it.
+func (s *section) follows(priceKey string, toMW, lastMW, price, lastPrice float64, why string) {
+	if toMW <= lastMW {
+		s.fault("to_mw", num(toMW), "more than the step before ("+num(lastMW)+")")
+	}
+	if price < lastPrice {
+		s.fault(priceKey, num(price), "at least the step before ("+num(lastPrice)+"): "+why)
+	}
+}
+
 // steps reads the marginal cost: rising steps, or one price.
 func (r *reader) steps(s *section, res *Resource) {
 	if s.has("cost_per_mwh") {
@@ -265,12 +275,7 @@ func (r *reader) steps(s *section, res *Resource) {
 		st := Step{ToMW: g.number("to_mw", positive), CostPerMWh: g.number("per_mwh", anyNumber)}
 		if len(res.Steps) > 0 {
 			last := res.Steps[len(res.Steps)-1]
-			if st.ToMW <= last.ToMW {
-				g.fault("to_mw", num(st.ToMW), "more than the step before ("+num(last.ToMW)+")")
-			}
-			if st.CostPerMWh < last.CostPerMWh {
-				g.fault("per_mwh", num(st.CostPerMWh), "at least the step before ("+num(last.CostPerMWh)+"): marginal cost must not fall")
-			}
+			g.follows("per_mwh", st.ToMW, last.ToMW, st.CostPerMWh, last.CostPerMWh, "marginal cost must not fall")
 		}
 		res.Steps = append(res.Steps, st)
 	}

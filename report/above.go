@@ -63,14 +63,14 @@ func aboveRow(row []string, c *fleet.Case, h *solve.Hour) []string {
 // aboveTally sums up the other side of nominal.
 type aboveTally struct {
 	binding [limits.Kinds]limitTally
-	down    []worth
-	loss    worth
+	down    []pricing
+	loss    pricing
 	held    spread
 	worst   [limits.Kinds]float64
 }
 
 func tallyAbove(c *fleet.Case, hours []solve.Hour) *aboveTally {
-	t := &aboveTally{down: make([]worth, len(c.Shapes))}
+	t := &aboveTally{down: make([]pricing, len(c.Shapes))}
 	for i := range hours {
 		h := &hours[i]
 		a := h.Above

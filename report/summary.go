@@ -288,7 +288,7 @@ func securityOf(s *security) *securityJSON {
 }
 
 func pricesJSON(c *fleet.Case, t *tally) []priceJSON {
-	price := func(of, shape, per string, p worth, dec int) priceJSON {
+	price := func(of, shape, per string, p pricing, dec int) priceJSON {
 		return priceJSON{of, shape, per, p.hours, number{p.mean(), dec}, number{p.max, dec}}
 	}
 	list := []priceJSON{

@@ -65,13 +65,13 @@ func (s *spread) mean() float64 {
 	return s.sum / float64(s.n)
 }
 
-// worth is a price over the hours in which it is not zero.
-type worth struct {
+// pricing is a price over the hours in which it is not zero.
+type pricing struct {
 	hours    int
 	sum, max float64
 }
 
-func (p *worth) add(v float64) {
+func (p *pricing) add(v float64) {
 	if printsZero(v, decInertia) {
 		return
 	}
@@ -82,7 +82,7 @@ func (p *worth) add(v float64) {
 	p.sum += v
 }
 
-func (p *worth) mean() float64 {
+func (p *pricing) mean() float64 {
 	if p.hours == 0 {
 		return 0
 	}
@@ -91,7 +91,7 @@ func (p *worth) mean() float64 {
 
 type limitTally struct {
 	binding, short int // hours
-	price          worth
+	price          pricing
 	margin         spread
 	byHour         [24]int // binding hours by hour of day, UTC
 	byMonth        [12]int
@@ -108,15 +108,15 @@ type tally struct {
 	gap                                float64 // the largest
 	gapAtHour, overGap                 int
 	inertia, left                      spread
-	energyPrice, inertiaPrice, lossMW  worth
-	response                           []worth // one a shape
+	energyPrice, inertiaPrice, lossMW  pricing
+	response                           []pricing // one a shape
 	nodes, pivots, rows                int
 	rocofHzPerS, nadirHz, steadyHz     float64 // the largest replayed
 	rocofAtHour, nadirAtHour, steadyAt int
 }
 
 func tallyHours(c *fleet.Case, hours []solve.Hour, askedGap float64) *tally {
-	t := &tally{response: make([]worth, len(c.Shapes)), gap: math.Inf(-1)}
+	t := &tally{response: make([]pricing, len(c.Shapes)), gap: math.Inf(-1)}
 	rocof, nadir, steady := math.Inf(-1), math.Inf(-1), math.Inf(-1)
 	for i := range hours {
 		h := &hours[i]

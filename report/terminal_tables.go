@@ -50,7 +50,7 @@ func share(n, of int) string { return fixed(100*float64(n)/float64(of), 1) }
 func (p *page) worths() {
 	t := p.tally
 	p.section("What a service is worth, in the hours that price it (" + p.c.Currency + " per hour)")
-	row := func(name string, w worth, dec int) {
+	row := func(name string, w pricing, dec int) {
 		if w.hours == 0 {
 			p.line("  %s never priced", padRight(name, 34))
 			return

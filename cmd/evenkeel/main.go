@@ -86,7 +86,7 @@ func root() *cobra.Command {
 	cmd.SetFlagErrorFunc(func(c *cobra.Command, err error) error {
 		return bad("%w; see 'evenkeel %s --help'", err, c.Name())
 	})
-	cmd.AddCommand(mixCommand(), vetCommand(), modelCommand(), tripCommand(), matchCommand(), inventCommand(), floorCommand(), sizeCommand())
+	cmd.AddCommand(mixCommand(), vetCommand(), modelCommand(), tripCommand(), matchCommand(), inventCommand(), floorCommand(), worthCommand(), sizeCommand())
 	return cmd
 }
 

@@ -96,7 +96,7 @@ func (plan *Plan) Climber(opt solve.Options) *Climber {
 	for i := range plan.Ladders {
 		l := &plan.Ladders[i]
 		if l.Growing {
-			c.ladders = append(c.ladders, sweep.NewLadder(l.Rungs, []int{plan.Resource}, opt).Hour)
+			c.ladders = append(c.ladders, sweep.NewSettledLadder(l.Rungs, []int{plan.Resource}, opt).Hour)
 			continue
 		}
 		var solvers []*solve.Solver

@@ -19,11 +19,25 @@ type Ladder struct {
 }
 
 // NewLadder prepares a ladder. All rungs have the same resources, shapes and losses; they differ
-// only in how much the resources listed in swept may do, which grows from rung to rung.
+// only in how much the resources listed in swept may do, which grows from rung to rung. Only the first
+// and the last rung are settled, if opt asks for that.
 func NewLadder(rungs []*fleet.Case, swept []int, opt solve.Options) *Ladder {
+	return newLadder(rungs, swept, opt, false)
+}
+
+// NewSettledLadder prepares a ladder of which every rung is settled. A rung that takes over a mix takes
+// over what that earns on its own rung.
+func NewSettledLadder(rungs []*fleet.Case, swept []int, opt solve.Options) *Ladder {
+	opt.Settle = true
+	return newLadder(rungs, swept, opt, true)
+}
+
+func newLadder(rungs []*fleet.Case, swept []int, opt solve.Options, between bool) *Ladder {
 	l := &Ladder{rungs: rungs, swept: swept, opt: opt}
-	for _, c := range rungs {
-		l.solvers = append(l.solvers, solve.New(c, opt))
+	for k, c := range rungs {
+		o := opt
+		o.Settle = opt.Settle && (between || k == 0 || k == len(rungs)-1)
+		l.solvers = append(l.solvers, solve.New(c, o))
 	}
 	return l
 }
@@ -36,13 +50,17 @@ type climb struct {
 	out   []solve.Hour
 	trail []*solve.Trail
 	done  []bool
+	// sure tells whether a rung's bound holds for every mix: what bounds rows that were rebuilt for one
+	// mix, as closed loop asked for it, says nothing of others.
+	sure []bool
 }
 
 // Hour solves an hour of the case on every rung. The first and the last rung are solved on their
 // own, so that they are what a single run of these two finds; a rung between takes the mix
 //
 //   - of a rung above, where it fits: what is best with more on offer and does not use it, is best;
-//   - of the rung below, where that costs no more than the bound proven above, within the gap;
+//   - of the rung below, where that costs no more than the bound proven above, within the gap (both
+//     only where nothing was mended above);
 //   - or its own, where that is cheaper than the mix of the rung below; its search starts from what
 //     the rungs on either side have found, and losses that are calm on both are not simulated again
 //     (solve.Solver.HourNear).
@@ -51,7 +69,7 @@ type climb struct {
 // that one holds can be held on it too. It is safe for concurrent use.
 func (l *Ladder) Hour(ctx context.Context, index int) ([]solve.Hour, error) {
 	n := len(l.rungs)
-	c := &climb{Ladder: l, ctx: ctx, hours: make([]*fleet.Hour, n), out: make([]solve.Hour, n), trail: make([]*solve.Trail, n), done: make([]bool, n)}
+	c := &climb{Ladder: l, ctx: ctx, hours: make([]*fleet.Hour, n), out: make([]solve.Hour, n), trail: make([]*solve.Trail, n), done: make([]bool, n), sure: make([]bool, n)}
 	for k := range c.hours {
 		c.hours[k] = l.rungs[k].Hour(index, fleet.HourOptions{StartSpreadH: l.opt.StartSpreadH})
 	}
@@ -64,6 +82,12 @@ func (l *Ladder) Hour(ctx context.Context, index int) ([]solve.Hour, error) {
 		}
 		if err := c.between(0, n-1); err != nil {
 			return nil, err
+		}
+		// What was found on the way to a rung may be dearer than what a rung below it found later.
+		for k := 1; k < n-1; k++ {
+			if better(&c.out[k-1], &c.out[k]) && c.fits(k-1, k) {
+				c.out[k] = c.taken(k-1, c.out[k].Bound)
+			}
 		}
 	}
 	return c.out, nil
@@ -80,6 +104,7 @@ func (c *climb) solve(k, below, above int) error {
 	if err != nil {
 		return err
 	}
+	c.sure[k] = h.Closed.Mended == 0
 	if below >= 0 && better(&c.out[below], &h) && c.fits(below, k) {
 		h, t = c.taken(below, h.Bound), c.trail[below]
 	}
@@ -114,10 +139,10 @@ func (c *climb) between(lo, hi int) error {
 			continue
 		}
 		switch {
-		case c.grows(k, hi) && c.fits(hi, k):
-			c.out[k], c.trail[k], c.done[k] = c.out[hi], c.trail[hi], true
-		case c.grows(k, hi) && c.fits(lo, k) && c.close(lo, hi):
-			c.out[k], c.trail[k], c.done[k] = c.taken(lo, c.out[hi].Bound), c.trail[lo], true
+		case c.sure[hi] && c.grows(k, hi) && c.fits(hi, k):
+			c.out[k], c.trail[k], c.done[k], c.sure[k] = c.out[hi], c.trail[hi], true, true
+		case c.sure[hi] && c.grows(k, hi) && c.fits(lo, k) && c.close(lo, hi):
+			c.out[k], c.trail[k], c.done[k], c.sure[k] = c.taken(lo, c.out[hi].Bound), c.trail[lo], true, true
 		default:
 			mid := (lo + hi) / 2
 			if !c.monotone(lo, hi) {

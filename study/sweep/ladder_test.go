@@ -16,11 +16,16 @@ import (
 // rungsOf adds a quick response of growing volume to the demo case.
 func rungsOf(t testing.TB, volumes ...float64) ([]*fleet.Case, []int) {
 	t.Helper()
+	return rungsWith(t, limits.Timing{DelayS: 0.1, RampS: 0.4, HoldS: 900, WithdrawS: 10}, volumes...)
+}
+
+func rungsWith(t testing.TB, times limits.Timing, volumes ...float64) ([]*fleet.Case, []int) {
+	t.Helper()
 	c, found := fleet.Read(filepath.Join("..", "..", "testdata", "skerra", "case.yaml"))
 	if c == nil {
 		t.Fatal(found)
 	}
-	shape, err := limits.Timing{DelayS: 0.1, RampS: 0.4, HoldS: 900, WithdrawS: 10}.Shape()
+	shape, err := times.Shape()
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -77,6 +82,39 @@ func TestLadder(t *testing.T) {
 				t.Errorf("hour %d, rung %d: %.3f, alone %.3f", i, k, whole[k].Cost, alone.Cost)
 			}
 		}
+	}
+}
+
+// A response that comes in whole after any loss and goes again soon can leave more behind than a
+// large loss: with much of it most mixes must be mended, and their cost proves nothing of those with
+// less of it. No rung between costs more than the one below all the same.
+func TestLadderWhereMoreIsDear(t *testing.T) {
+	rungs, swept := rungsWith(t, limits.Timing{DelayS: 0.2, RampS: 0.3, HoldS: 20, WithdrawS: 10}, 0, 4, 8, 16, 24, 32, 40)
+	l := NewLadder(rungs, swept, solve.Options{Gap: 2e-4})
+	mended, saved := 0, 0.0
+	for i := 0; i < rungs[0].Hours(); i += 487 {
+		out, err := l.Hour(context.Background(), i)
+		if err != nil {
+			t.Fatal(err)
+		}
+		for k := range out {
+			mended += out[k].Closed.Mended
+			if k > 0 && k < len(out)-1 && out[k].Cost > out[k-1].Cost+1e-6 {
+				t.Errorf("hour %d: rung %d costs %.3f, the one below %.3f", i, k, out[k].Cost, out[k-1].Cost)
+			}
+		}
+		alone, err := l.solvers[1].Hour(context.Background(), rungs[1].Hour(i, fleet.HourOptions{}))
+		if err != nil {
+			t.Fatal(err)
+		}
+		// A search that starts from a neighbour's mended shapes may keep them where it need not.
+		if out[1].Cost > alone.Cost+2e-3*alone.Cost {
+			t.Errorf("hour %d: 4 MW cost %.3f, alone %.3f", i, out[1].Cost, alone.Cost)
+		}
+		saved += out[0].Cost - out[1].Cost
+	}
+	if mended == 0 || !(saved > 0) {
+		t.Errorf("%d mends, %.3f saved by 4 MW: these hours test nothing", mended, saved)
 	}
 }
 
