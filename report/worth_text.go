@@ -214,7 +214,7 @@ func (p *worthPage) product() {
 	q, r := p.r.Product, p.r
 	p.section(fmt.Sprintf("%s: all out %s; %s; up to %s MW", q.Name, activationWords(q, q.ActivationS), holdWords(q), plain(q.MostMW())))
 	p.text(fmt.Sprintf("A year without it costs %s. With it, %s a year:", p.money(r.Points[0].Cost), p.c.Currency), "  ")
-	p.line("  %8s %10s %12s %12s %10s %10s %9s", "volume", "held", "saves", "before its", "saves", "next MW", "CO2")
+	p.line("  %8s %10s %12s %12s %10s %10s %9s", "volume", "held", "saves", "before its", "saves", "next MW", "more CO2")
 	p.line("  %8s %10s %12s %12s %10s %10s %9s", "MW", "mean MW", "net", "own pay", "per MW", "saves", "t")
 	for k := range r.Points {
 		pt := &r.Points[k]
