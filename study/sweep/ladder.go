@@ -48,7 +48,7 @@ type climb struct {
 //     (solve.Solver.HourNear).
 //
 // A mix is a proven one wherever it comes from. No rung costs more than the one below it, if what
-// that one holds can be held on it too. It is safe for concurrent use.
+// that one holds can be held on it too and acts alike in closed loop. It is safe for concurrent use.
 func (l *Ladder) Hour(ctx context.Context, index int) ([]solve.Hour, error) {
 	n := len(l.rungs)
 	c := &climb{Ladder: l, ctx: ctx, hours: make([]*fleet.Hour, n), out: make([]solve.Hour, n), trail: make([]*solve.Trail, n), done: make([]bool, n)}
@@ -158,10 +158,27 @@ func (c *climb) close(lo, hi int) bool {
 	return a.Status == solve.Secure && a.Cost-b.Bound <= gap*math.Abs(a.Cost)
 }
 
-// fits tells whether the swept resources can do on rung k what they do in the mix of rung from.
+// fits tells whether the swept resources can do on rung k what they do in the mix of rung from,
+// and do it there in closed loop just so.
 func (c *climb) fits(from, k int) bool {
 	for _, i := range c.swept {
-		if !fits(&c.hours[k].Units[i], &c.hours[from].Units[i], &c.out[from].Dispatch[i]) {
+		d := &c.out[from].Dispatch[i]
+		if !fits(&c.hours[k].Units[i], &c.hours[from].Units[i], d) || !c.actsAlike(from, k, i, d) {
+			return false
+		}
+	}
+	return true
+}
+
+// actsAlike tells whether what a swept resource holds acts in closed loop on rung k as it was proven
+// on rung from: droop and rate limits count on the rating, which may grow with the rungs.
+func (c *climb) actsAlike(from, k, swept int, d *solve.Dispatch) bool {
+	r := &c.rungs[k].Resources[swept]
+	if d.ResponseMW <= roundingMW && d.DownMW <= roundingMW || r.Base() == c.rungs[from].Resources[swept].Base() {
+		return true
+	}
+	for _, m := range c.rungs[k].Models {
+		if m.Shape == r.Response.Shape || m.Shape == r.Down.Shape {
 			return false
 		}
 	}
