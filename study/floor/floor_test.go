@@ -154,6 +154,53 @@ func TestYear(t *testing.T) {
 	}
 }
 
+// A way to close the gap has no freedom that the mix has not, so it costs no less; and constraining
+// machines on holds no more response, not even by further units of a kind that has some.
+func TestWaysAreNoMoreThanTheMix(t *testing.T) {
+	c := demo(t)
+	s := newSolvers(c, solve.Options{Gap: -1})
+	n := newNeeds(c)
+	for _, i := range []int{1101, 1711, 4578, 5371} {
+		h := c.Hour(i, fleet.HourOptions{})
+		p := formulate.Build(c, h)
+		bare, err := s.bare.Hour(context.Background(), h)
+		if err != nil {
+			t.Fatal(err)
+		}
+		mix, err := s.rows.Hour(context.Background(), h)
+		if err != nil {
+			t.Fatal(err)
+		}
+		largest := n.of(p, &bare).LargestMW
+		for w := range Ways {
+			asked := way(w, p, &bare, largest)
+			closed, err := s.rows.Hour(context.Background(), asked)
+			if err != nil {
+				t.Fatal(err)
+			}
+			if closed.Met() && closed.Cost < mix.Bound-1e-3 {
+				t.Errorf("hour %d: %s alone costs %.3f, the mix at least %.3f", i, WayNames[w], closed.Cost, mix.Bound)
+			}
+			held := make([]float64, len(c.Shapes))
+			for k, d := range bare.Dispatch {
+				if shape := h.Units[k].Shape; shape >= 0 {
+					held[shape] += d.ResponseMW
+				}
+			}
+			for k, d := range closed.Dispatch {
+				if shape := asked.Units[k].Shape; shape >= 0 {
+					held[shape] -= d.ResponseMW
+				}
+			}
+			for shape, mw := range held {
+				if w != Response && mw < -1e-4 {
+					t.Errorf("hour %d: %s alone holds %.3f MW more of %s than the plain dispatch", i, WayNames[w], -mw, c.Shapes[shape].Name)
+				}
+			}
+		}
+	}
+}
+
 // R1 and R5 in closed loop: with nothing held the floor is f0·ΔP/(2ρ); with one ramp that covers the loss,
 // f0·ΔP²·T/(4·R·X), the limits being the case's and the simulation's own error (computed; sources in limits).
 func TestClosedFloors(t *testing.T) {
