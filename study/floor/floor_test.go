@@ -154,6 +154,15 @@ func TestYear(t *testing.T) {
 	}
 }
 
+// A bracket of losses that no hour has falls to the one above: it never asks for nothing.
+func TestTableHasNoEmptySteps(t *testing.T) {
+	got := joined([]RuleStep{{50, 60, 2300, 4}, {60, 70, 0, 0}, {70, 80, 0, 0}, {80, 90, 3000, 1}, {90, 100, 2800, 2}})
+	want := []RuleStep{{50, 60, 2300, 4}, {60, 90, 3000, 1}, {90, 100, 2800, 2}}
+	if !reflect.DeepEqual(got, want) {
+		t.Errorf("%v, want %v", got, want)
+	}
+}
+
 // A way to close the gap has no freedom that the mix has not, so it costs no less; and constraining
 // machines on holds no more response, not even by further units of a kind that has some.
 func TestWaysAreNoMoreThanTheMix(t *testing.T) {

@@ -31,8 +31,8 @@ type Kept struct {
 	MWs      float64 // online
 }
 
-// makeRules are one number for all hours, one for each bracket of the largest loss, and those asked
-// for. The first two are the least that cover every hour's own floor, in the secure mixes.
+// makeRules are one number for all hours, one for each bracket of the largest loss that hours fall
+// into, and those asked for. The first two are the least that cover every hour's own floor, in the secure mixes.
 func (s *Study) makeRules() []Rule {
 	one := RuleStep{}
 	low, high := -1.0, 0.0
@@ -63,6 +63,7 @@ func (s *Study) makeRules() []Rule {
 				st.Hours++
 			}
 		}
+		table.Steps = joined(table.Steps)
 		rules = append(rules, table)
 	}
 	for _, mws := range s.ask.Policies {
@@ -71,6 +72,21 @@ func (s *Study) makeRules() []Rule {
 		rules = append(rules, Rule{Name: "own number", Steps: []RuleStep{st}})
 	}
 	return rules
+}
+
+// joined drops steps that no hour has asked for: such losses count to the next step, which is for
+// larger ones. The last step has an hour.
+func joined(steps []RuleStep) []RuleStep {
+	var out []RuleStep
+	from := steps[0].FromMW
+	for _, st := range steps {
+		if st.Hours == 0 {
+			continue
+		}
+		st.FromMW, from = from, st.ToMW
+		out = append(out, st)
+	}
+	return out
 }
 
 // step is the step for a largest loss; those beyond the ends count to them.
