@@ -154,6 +154,24 @@ func TestYear(t *testing.T) {
 	}
 }
 
+// A rule is not kept by output above the load: what lacks of it then is what machines that fit under
+// the load lack.
+func TestRuleWithinTheLoad(t *testing.T) {
+	c := demo(t)
+	s := newSolvers(c, solve.Options{})
+	for _, i := range []int{4155, 5020, 6577} {
+		h := c.Hour(i, fleet.HourOptions{})
+		h.LeastInertiaMWs = 4150
+		m, err := s.firm.Hour(context.Background(), h)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if m.ExcessMW > 0 || m.UnservedMW > 0 || m.FloorShortMWs <= 0 {
+			t.Errorf("hour %d: %.1f MW above the load, %.1f MW not served, %.1f MW·s lacking", i, m.ExcessMW, m.UnservedMW, m.FloorShortMWs)
+		}
+	}
+}
+
 // A bracket of losses that no hour has falls to the one above: it never asks for nothing.
 func TestTableHasNoEmptySteps(t *testing.T) {
 	got := joined([]RuleStep{{50, 60, 2300, 4}, {60, 70, 0, 0}, {70, 80, 0, 0}, {80, 90, 3000, 1}, {90, 100, 2800, 2}})

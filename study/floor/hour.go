@@ -61,13 +61,15 @@ type solvers struct {
 	firm                    *solve.Solver // of rules
 }
 
-// firmly makes what lacks of a rule, and a shortfall of a limit, so dear that only what cannot be
-// had lacks. It has no say in the cost of what is kept.
+// firmly makes what lacks of a rule, and any other shortfall, so dear that only what cannot be had
+// lacks. It has no say in the cost of what is kept. What machines put out above the load is as dear,
+// as a rule kept that way is none.
 const firmly = 1000
 
 func newSolvers(c *fleet.Case, o solve.Options) *solvers {
 	dear := *c
 	dear.ShortPerMW *= firmly
+	dear.UnservedPerMWh *= firmly
 	s := &solvers{c: c, spread: o.StartSpreadH, secure: solve.New(c, o), firm: solve.New(&dear, o)}
 	o.RowsOnly = true
 	s.rows = solve.New(c, o)
