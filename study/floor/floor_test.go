@@ -181,6 +181,31 @@ func TestTableHasNoEmptySteps(t *testing.T) {
 	}
 }
 
+// Every hour that counts lies in just one step of a rule, the one with the smallest loss too; where no
+// hour counts there is no table.
+func TestStepsCoverEveryHour(t *testing.T) {
+	s := &Study{ask: &Ask{Brackets: 3}, hours: []*Hour{{Short: true}}}
+	if rules := s.makeRules(); len(rules) != 1 {
+		t.Errorf("without an hour that counts the rules are %+v", rules)
+	}
+	for _, mw := range []float64{40, 55, 90, 100} {
+		s.hours = append(s.hours, &Hour{Mix: Need{LargestMW: mw, FloorMWs: 20 * mw}})
+	}
+	for _, r := range s.makeRules() {
+		for _, h := range s.hours[1:] {
+			in := 0
+			for _, st := range r.Steps {
+				if h.Mix.LargestMW > st.FromMW && h.Mix.LargestMW <= st.ToMW && h.Mix.FloorMWs <= st.MWs {
+					in++
+				}
+			}
+			if in != 1 {
+				t.Errorf("%s: the hour with %g MW lies in %d steps of %+v", r.Name, h.Mix.LargestMW, in, r.Steps)
+			}
+		}
+	}
+}
+
 // A way to close the gap has no freedom that the mix has not, so it costs no less; and constraining
 // machines on holds no more response, not even by further units of a kind that has some.
 func TestWaysAreNoMoreThanTheMix(t *testing.T) {

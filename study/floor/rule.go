@@ -47,15 +47,15 @@ func (s *Study) makeRules() []Rule {
 		}
 		high = max(high, h.Mix.LargestMW)
 	}
-	one.FromMW, one.ToMW = max(low, 0), high
+	one.ToMW = high
 	rules := []Rule{{Name: "one number", Steps: []RuleStep{one}}}
-	if n := s.ask.Brackets; n > 1 && high > low {
+	if n := s.ask.Brackets; n > 1 && one.Hours > 0 && high > low {
 		table := Rule{Name: "table by loss", Steps: make([]RuleStep, n)}
 		for b := range table.Steps {
 			st := &table.Steps[b]
 			st.FromMW, st.ToMW = low+(high-low)*float64(b)/float64(n), low+(high-low)*float64(b+1)/float64(n)
 		}
-		table.Steps[n-1].ToMW = high
+		table.Steps[0].FromMW, table.Steps[n-1].ToMW = 0, high
 		for _, h := range s.hours {
 			if !h.Short {
 				st := table.step(h.Mix.LargestMW)
