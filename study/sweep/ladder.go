@@ -5,6 +5,7 @@ package sweep
 import (
 	"context"
 	"math"
+	"slices"
 
 	"evenkeel/fleet"
 	"evenkeel/solve"
@@ -81,7 +82,7 @@ func (c *climb) solve(k, below, above int) error {
 		return err
 	}
 	if below >= 0 && better(&c.out[below], &h) && c.fits(below, k) {
-		h, t = c.taken(below, h.Bound), c.trail[below]
+		h, t = c.taken(below, k, h.Bound), c.trail[below]
 	}
 	c.out[k], c.trail[k], c.done[k] = h, t, true
 	return nil
@@ -95,12 +96,23 @@ func better(a, b *solve.Hour) bool {
 	return a.Cost < b.Cost
 }
 
-// taken is the mix of rung k as another rung takes it, with what that one has proven.
-func (c *climb) taken(k int, bound float64) solve.Hour {
-	h := c.out[k]
+// taken is the mix of rung from as rung k takes it, with the bound proven for that one. What is
+// curtailed counts from what rung k has on offer.
+func (c *climb) taken(from, k int, bound float64) solve.Hour {
+	h := c.out[from]
 	h.Bound = min(bound, h.Cost)
 	if h.Cost != 0 {
 		h.Gap = (h.Cost - h.Bound) / math.Abs(h.Cost)
+	}
+	h.Dispatch = slices.Clone(h.Dispatch)
+	for _, i := range c.swept {
+		u, was, d := &c.hours[k].Units[i], &c.hours[from].Units[i], &h.Dispatch[i]
+		if !u.Renewable || u.MaxMW == was.MaxMW && u.Count == was.Count {
+			continue
+		}
+		h.CurtailedMW -= d.CurtailedMW
+		d.CurtailedMW = max(float64(u.Count)*u.MaxMW-d.OutputMW, 0)
+		h.CurtailedMW += d.CurtailedMW
 	}
 	return h
 }
@@ -115,9 +127,9 @@ func (c *climb) between(lo, hi int) error {
 		}
 		switch {
 		case c.grows(k, hi) && c.fits(hi, k):
-			c.out[k], c.trail[k], c.done[k] = c.out[hi], c.trail[hi], true
+			c.out[k], c.trail[k], c.done[k] = c.taken(hi, k, c.out[hi].Bound), c.trail[hi], true
 		case c.grows(k, hi) && c.fits(lo, k) && c.close(lo, hi):
-			c.out[k], c.trail[k], c.done[k] = c.taken(lo, c.out[hi].Bound), c.trail[lo], true
+			c.out[k], c.trail[k], c.done[k] = c.taken(lo, k, c.out[hi].Bound), c.trail[lo], true
 		default:
 			mid := (lo + hi) / 2
 			if !c.monotone(lo, hi) {

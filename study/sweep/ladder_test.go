@@ -129,6 +129,50 @@ func TestLadderOfRatings(t *testing.T) {
 	}
 }
 
+// A mix taken from another rung is told by its own rung: wind that grows curtails more.
+func TestLadderOfWind(t *testing.T) {
+	c, found := fleet.Read(filepath.Join("..", "..", "testdata", "skerra", "case.yaml"))
+	if c == nil {
+		t.Fatal(found)
+	}
+	wind := slices.IndexFunc(c.Resources, func(r fleet.Resource) bool { return r.Name == "Vestan wind" })
+	var rungs []*fleet.Case
+	for _, times := range []float64{1, 1.1, 1.2, 1.4, 2} {
+		r := *c
+		r.Resources = slices.Clone(c.Resources)
+		most := slices.Clone(c.Resources[wind].MaxMW.Series)
+		for i := range most {
+			most[i] *= times
+		}
+		r.Resources[wind].MaxMW.Series = most
+		rungs = append(rungs, &r)
+	}
+	ladder := NewLadder(rungs, []int{wind}, solve.Options{})
+	for _, i := range []int{0, 97} {
+		out, err := ladder.Hour(context.Background(), i)
+		if err != nil {
+			t.Fatal(err)
+		}
+		for k, m := range out {
+			h := rungs[k].Hour(i, fleet.HourOptions{})
+			all := 0.0
+			for u, d := range m.Dispatch {
+				if !h.Units[u].Renewable {
+					continue
+				}
+				curtailed := max(float64(h.Units[u].Count)*h.Units[u].MaxMW-d.OutputMW, 0)
+				all += curtailed
+				if math.Abs(d.CurtailedMW-curtailed) > 1e-3 {
+					t.Errorf("hour %d, rung %d: %s curtails %.3f MW, told %.3f", i, k, c.Resources[u].Name, curtailed, d.CurtailedMW)
+				}
+			}
+			if math.Abs(m.CurtailedMW-all) > 1e-3 {
+				t.Errorf("hour %d, rung %d: %.3f MW are curtailed, told %.3f", i, k, all, m.CurtailedMW)
+			}
+		}
+	}
+}
+
 // Ten points over the hours of a year, against one solve of the same hours.
 func BenchmarkTenPoints(b *testing.B) {
 	opt := solve.Options{Gap: 2e-4}
