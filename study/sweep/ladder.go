@@ -48,8 +48,9 @@ type climb struct {
 //     the rungs on either side have found, and losses that are calm on both are not simulated again
 //     (solve.Solver.HourNear).
 //
-// A mix is a proven one wherever it comes from. No rung costs more than the one below it, if what
-// that one holds can be held on it too and acts alike in closed loop. It is safe for concurrent use.
+// A mix is a proven one wherever it comes from. No rung but the last costs more than the one below
+// it, if what that one holds can be held on it too and acts alike in closed loop. It is safe for
+// concurrent use.
 func (l *Ladder) Hour(ctx context.Context, index int) ([]solve.Hour, error) {
 	n := len(l.rungs)
 	c := &climb{Ladder: l, ctx: ctx, hours: make([]*fleet.Hour, n), out: make([]solve.Hour, n), trail: make([]*solve.Trail, n), done: make([]bool, n)}
