@@ -12,6 +12,9 @@ type Hour struct {
 	LoadInertiaMWs float64
 	// LeastInertiaMWs must be online, the load's own included, whatever the limits need; 0: none.
 	LeastInertiaMWs float64
+	// MostInertiaMWs is what bounds of damping suppose to be online at least, so that hours that
+	// differ in their units can have the same rows; 0: as the units have it.
+	MostInertiaMWs float64
 
 	Units  []Unit     // one a resource, same index as Case.Resources
 	Losses []HourLoss // every loss the hour must survive

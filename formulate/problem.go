@@ -123,7 +123,7 @@ func Build(c *fleet.Case, h *fleet.Hour) *Problem {
 			p.OverLosses = append(p.OverLosses, loss)
 		}
 	}
-	p.MostInertiaMWs = mostInertia(h)
+	p.MostInertiaMWs = max(mostInertia(h), h.MostInertiaMWs)
 	p.DampingA0 = h.DampingMWPerHz * c.Limits.NominalHz / (2 * p.MostInertiaMWs)
 	if p.MostInertiaMWs <= 0 {
 		p.DampingA0 = 0

@@ -203,7 +203,7 @@ func (p *floorPage) policies() {
 	}
 	text := fmt.Sprintf("The mix itself, which has just what each hour needs, costs %s.", p.yearlyMoney(mix))
 	if !kept {
-		text += " Not kept: all there is does not reach the rule; those hours are not in its cost."
+		text += " Not kept: all that fits under the load does not reach the rule; those hours are not in its cost."
 	}
 	p.text(text, "  ")
 }

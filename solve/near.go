@@ -23,7 +23,7 @@ const calmShare = 0.5
 
 // HourNear is Hour with a look at neighbours: the same hour solved, in closed loop too, with a
 // little less and a little more on offer. Their commitments are tried first, the search starts
-// from the shapes that the first of them was mended to, and a loss that stayed under half of every
+// from the shapes of the one that was mended least, and a loss that stayed under half of every
 // limit in both of them and in this mix's open-loop replay is not simulated again. Without
 // neighbours it is Hour. The mix is optimal to the gap all the same, against the rows it was
 // solved with.

@@ -11,7 +11,8 @@ import (
 //
 // Marginal prices are the duals of the dispatch, its commitment held. Convex hull prices are the
 // duals of the relaxation in which every resource may take any mean of its operating points (the
-// Dantzig–Wolfe master): of all prices they leave the least uplift. In both, every possible loss
+// Dantzig–Wolfe master): of all prices they leave the least uplift, what they pay for surplus counted
+// in. In both, every possible loss
 // has rows of its own: what is lost counts in them by its output, which it pays for, and is paid
 // nothing for the inertia and the response that go with it. In the convex hull a fraction of a
 // machine is a fraction of a loss, and identical units are lost at the mean of all of them, on or
@@ -23,14 +24,15 @@ type Settlement struct {
 
 // Settled is the settlement at one set of prices, per hour.
 type Settled struct {
-	Prices    Prices
+	Prices    Prices    // of inertia: that of a least inertia included
 	DownPerMW []float64 // one a shape; nil without limits above nominal
 	OverPerMW float64   // what 1 MW less of the binding losses of load saves
 	Resources []Earning // one a resource of the case, all its units together
 	Unpaid    []Unpaid  // one a resource
 	Uplift    float64   // of all resources
 	// SlackValue is what the prices pay for more of the rows than they need; marginal prices do
-	// not. With it, Uplift is the cost less the bound that the prices prove.
+	// not. With it, Uplift is the cost less the bound that the prices prove, unless the hour is short:
+	// what a shortfall costs above the prices is no resource's.
 	SlackValue float64
 }
 

@@ -154,6 +154,105 @@ func TestYear(t *testing.T) {
 	}
 }
 
+// A rule is not kept by output above the load: what lacks of it then is what machines that fit under
+// the load lack.
+func TestRuleWithinTheLoad(t *testing.T) {
+	c := demo(t)
+	s := newSolvers(c, solve.Options{})
+	for _, i := range []int{4155, 5020, 6577} {
+		h := c.Hour(i, fleet.HourOptions{})
+		h.LeastInertiaMWs = 4150
+		m, err := s.firm.Hour(context.Background(), h)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if m.ExcessMW > 0 || m.UnservedMW > 0 || m.FloorShortMWs <= 0 {
+			t.Errorf("hour %d: %.1f MW above the load, %.1f MW not served, %.1f MW·s lacking", i, m.ExcessMW, m.UnservedMW, m.FloorShortMWs)
+		}
+	}
+}
+
+// A bracket of losses that no hour has falls to the one above: it never asks for nothing.
+func TestTableHasNoEmptySteps(t *testing.T) {
+	got := joined([]RuleStep{{50, 60, 2300, 4}, {60, 70, 0, 0}, {70, 80, 0, 0}, {80, 90, 3000, 1}, {90, 100, 2800, 2}})
+	want := []RuleStep{{50, 60, 2300, 4}, {60, 90, 3000, 1}, {90, 100, 2800, 2}}
+	if !reflect.DeepEqual(got, want) {
+		t.Errorf("%v, want %v", got, want)
+	}
+}
+
+// Every hour that counts lies in just one step of a rule, the one with the smallest loss too; where no
+// hour counts there is no table.
+func TestStepsCoverEveryHour(t *testing.T) {
+	s := &Study{ask: &Ask{Brackets: 3}, hours: []*Hour{{Short: true}}}
+	if rules := s.makeRules(); len(rules) != 1 {
+		t.Errorf("without an hour that counts the rules are %+v", rules)
+	}
+	for _, mw := range []float64{40, 55, 90, 100} {
+		s.hours = append(s.hours, &Hour{Mix: Need{LargestMW: mw, FloorMWs: 20 * mw}})
+	}
+	for _, r := range s.makeRules() {
+		for _, h := range s.hours[1:] {
+			in := 0
+			for _, st := range r.Steps {
+				if h.Mix.LargestMW > st.FromMW && h.Mix.LargestMW <= st.ToMW && h.Mix.FloorMWs <= st.MWs {
+					in++
+				}
+			}
+			if in != 1 {
+				t.Errorf("%s: the hour with %g MW lies in %d steps of %+v", r.Name, h.Mix.LargestMW, in, r.Steps)
+			}
+		}
+	}
+}
+
+// A way to close the gap has no freedom that the mix has not, so it costs no less; and constraining
+// machines on holds no more response, not even by further units of a kind that has some.
+func TestWaysAreNoMoreThanTheMix(t *testing.T) {
+	c := demo(t)
+	s := newSolvers(c, solve.Options{Gap: -1})
+	n := newNeeds(c)
+	for _, i := range []int{1101, 1711, 4578, 5371} {
+		h := c.Hour(i, fleet.HourOptions{})
+		p := formulate.Build(c, h)
+		bare, err := s.bare.Hour(context.Background(), h)
+		if err != nil {
+			t.Fatal(err)
+		}
+		mix, err := s.rows.Hour(context.Background(), h)
+		if err != nil {
+			t.Fatal(err)
+		}
+		largest := n.of(p, &bare).LargestMW
+		for w := range Ways {
+			asked := way(w, p, &bare, largest)
+			closed, err := s.rows.Hour(context.Background(), asked)
+			if err != nil {
+				t.Fatal(err)
+			}
+			if closed.Met() && closed.Cost < mix.Bound-1e-3 {
+				t.Errorf("hour %d: %s alone costs %.3f, the mix at least %.3f", i, WayNames[w], closed.Cost, mix.Bound)
+			}
+			held := make([]float64, len(c.Shapes))
+			for k, d := range bare.Dispatch {
+				if shape := h.Units[k].Shape; shape >= 0 {
+					held[shape] += d.ResponseMW
+				}
+			}
+			for k, d := range closed.Dispatch {
+				if shape := asked.Units[k].Shape; shape >= 0 {
+					held[shape] -= d.ResponseMW
+				}
+			}
+			for shape, mw := range held {
+				if w != Response && mw < -1e-4 {
+					t.Errorf("hour %d: %s alone holds %.3f MW more of %s than the plain dispatch", i, WayNames[w], -mw, c.Shapes[shape].Name)
+				}
+			}
+		}
+	}
+}
+
 // R1 and R5 in closed loop: with nothing held the floor is f0·ΔP/(2ρ); with one ramp that covers the loss,
 // f0·ΔP²·T/(4·R·X), the limits being the case's and the simulation's own error (computed; sources in limits).
 func TestClosedFloors(t *testing.T) {

@@ -2,6 +2,7 @@ package floor
 
 import (
 	"context"
+	"slices"
 	"time"
 
 	"evenkeel/fleet"
@@ -60,13 +61,15 @@ type solvers struct {
 	firm                    *solve.Solver // of rules
 }
 
-// firmly makes what lacks of a rule, and a shortfall of a limit, so dear that only what cannot be
-// had lacks. It has no say in the cost of what is kept.
+// firmly makes what lacks of a rule, and any other shortfall, so dear that only what cannot be had
+// lacks. It has no say in the cost of what is kept. What machines put out above the load is as dear,
+// as a rule kept that way is none.
 const firmly = 1000
 
 func newSolvers(c *fleet.Case, o solve.Options) *solvers {
 	dear := *c
 	dear.ShortPerMW *= firmly
+	dear.UnservedPerMWh *= firmly
 	s := &solvers{c: c, spread: o.StartSpreadH, secure: solve.New(c, o), firm: solve.New(&dear, o)}
 	o.RowsOnly = true
 	s.rows = solve.New(c, o)
@@ -104,7 +107,7 @@ func (s *solvers) hour(ctx context.Context, n *needs, index int) (*Hour, error) 
 		return out, nil
 	}
 	for w := range out.Ways {
-		closed, err := s.rows.Hour(ctx, way(w, h, &bare, out.Bare.LargestMW))
+		closed, err := s.rows.Hour(ctx, way(w, p, &bare, out.Bare.LargestMW))
 		if err != nil {
 			return nil, err
 		}
@@ -113,11 +116,15 @@ func (s *solvers) hour(ctx context.Context, n *needs, index int) (*Hour, error) 
 	return out, nil
 }
 
-// way is the hour with no more freedom than one way to close the gap of the dispatch d needs.
-func way(w int, h *fleet.Hour, d *solve.Hour, largestMW float64) *fleet.Hour {
+// way is the hour with no more freedom than one way to close the gap of the dispatch d needs. Its
+// rows count damping as those of the hour p do, so that no way costs less than the mix.
+func way(w int, p *formulate.Problem, d *solve.Hour, largestMW float64) *fleet.Hour {
+	h := p.Hour
 	out := *h
+	out.MostInertiaMWs = p.MostInertiaMWs
 	out.Units = append([]fleet.Unit(nil), h.Units...)
-	for i := range out.Units {
+	out.Losses = append([]fleet.HourLoss(nil), h.Losses...)
+	for i := range h.Units {
 		u, part := &out.Units[i], &d.Dispatch[i]
 		if w != Machines && u.Commit { // who runs stays
 			u.Count, u.MustRun = part.On, true
@@ -132,11 +139,35 @@ func way(w int, h *fleet.Hour, d *solve.Hour, largestMW float64) *fleet.Hour {
 			u.DownCapMW = min(u.DownCapMW, part.DownMW/n)
 			u.SyntheticCapMWs = min(u.SyntheticCapMWs, synthetic/n)
 		}
+		if more := u.Count - part.On; u.Commit && more > 0 && u.ResponseCapMW+u.DownCapMW > 0 && w == Machines {
+			further := *u // who comes on beside them holds nothing
+			further.Count, further.ResponseCapMW, further.DownCapMW = more, 0, 0
+			u.Count = part.On
+			out.Units = append(out.Units, further)
+			out.Losses = lostToo(out.Losses, i, len(out.Units)-1)
+		}
 	}
 	if w != Smaller && largestMW > 0 { // the largest loss stays, whatever is dispatched
-		out.Losses = append(append([]fleet.HourLoss(nil), h.Losses...), fleet.HourLoss{Name: "the largest loss as it was", FixedMW: largestMW})
+		out.Losses = append(out.Losses, fleet.HourLoss{Name: "the largest loss as it was", FixedMW: largestMW})
 	}
 	return &out
+}
+
+// lostToo lets a unit that was split off another one be lost as that one is.
+func lostToo(losses []fleet.HourLoss, was, split int) []fleet.HourLoss {
+	for k := range losses {
+		l := losses[k]
+		if !slices.Contains(l.Members, was) {
+			continue
+		}
+		if l.Single {
+			l.Members = []int{split}
+			losses = append(losses, l)
+		} else {
+			losses[k].Members = append(slices.Clone(l.Members), split)
+		}
+	}
+	return losses
 }
 
 // Word names what sets a floor.

@@ -31,8 +31,8 @@ type Kept struct {
 	MWs      float64 // online
 }
 
-// makeRules are one number for all hours, one for each bracket of the largest loss, and those asked
-// for. The first two are the least that cover every hour's own floor, in the secure mixes.
+// makeRules are one number for all hours, one for each bracket of the largest loss that hours fall
+// into, and those asked for. The first two are the least that cover every hour's own floor, in the secure mixes.
 func (s *Study) makeRules() []Rule {
 	one := RuleStep{}
 	low, high := -1.0, 0.0
@@ -47,15 +47,15 @@ func (s *Study) makeRules() []Rule {
 		}
 		high = max(high, h.Mix.LargestMW)
 	}
-	one.FromMW, one.ToMW = max(low, 0), high
+	one.ToMW = high
 	rules := []Rule{{Name: "one number", Steps: []RuleStep{one}}}
-	if n := s.ask.Brackets; n > 1 && high > low {
+	if n := s.ask.Brackets; n > 1 && one.Hours > 0 && high > low {
 		table := Rule{Name: "table by loss", Steps: make([]RuleStep, n)}
 		for b := range table.Steps {
 			st := &table.Steps[b]
 			st.FromMW, st.ToMW = low+(high-low)*float64(b)/float64(n), low+(high-low)*float64(b+1)/float64(n)
 		}
-		table.Steps[n-1].ToMW = high
+		table.Steps[0].FromMW, table.Steps[n-1].ToMW = 0, high
 		for _, h := range s.hours {
 			if !h.Short {
 				st := table.step(h.Mix.LargestMW)
@@ -63,6 +63,7 @@ func (s *Study) makeRules() []Rule {
 				st.Hours++
 			}
 		}
+		table.Steps = joined(table.Steps)
 		rules = append(rules, table)
 	}
 	for _, mws := range s.ask.Policies {
@@ -71,6 +72,21 @@ func (s *Study) makeRules() []Rule {
 		rules = append(rules, Rule{Name: "own number", Steps: []RuleStep{st}})
 	}
 	return rules
+}
+
+// joined drops steps that no hour has asked for: such losses count to the next step, which is for
+// larger ones. The last step has an hour.
+func joined(steps []RuleStep) []RuleStep {
+	var out []RuleStep
+	from := steps[0].FromMW
+	for _, st := range steps {
+		if st.Hours == 0 {
+			continue
+		}
+		st.FromMW, from = from, st.ToMW
+		out = append(out, st)
+	}
+	return out
 }
 
 // step is the step for a largest loss; those beyond the ends count to them.

@@ -5,6 +5,7 @@ package sweep
 import (
 	"context"
 	"math"
+	"slices"
 
 	"evenkeel/fleet"
 	"evenkeel/solve"
@@ -65,8 +66,9 @@ type climb struct {
 //     the rungs on either side have found, and losses that are calm on both are not simulated again
 //     (solve.Solver.HourNear).
 //
-// A mix is a proven one wherever it comes from. No rung costs more than the one below it, if what
-// that one holds can be held on it too. It is safe for concurrent use.
+// A mix is a proven one wherever it comes from. No rung but the last costs more than the one below
+// it, if what that one holds can be held on it too and acts alike in closed loop. It is safe for
+// concurrent use.
 func (l *Ladder) Hour(ctx context.Context, index int) ([]solve.Hour, error) {
 	n := len(l.rungs)
 	c := &climb{Ladder: l, ctx: ctx, hours: make([]*fleet.Hour, n), out: make([]solve.Hour, n), trail: make([]*solve.Trail, n), done: make([]bool, n), sure: make([]bool, n)}
@@ -86,7 +88,7 @@ func (l *Ladder) Hour(ctx context.Context, index int) ([]solve.Hour, error) {
 		// What was found on the way to a rung may be dearer than what a rung below it found later.
 		for k := 1; k < n-1; k++ {
 			if better(&c.out[k-1], &c.out[k]) && c.fits(k-1, k) {
-				c.out[k] = c.taken(k-1, c.out[k].Bound)
+				c.out[k] = c.taken(k-1, k, c.out[k].Bound)
 			}
 		}
 	}
@@ -106,7 +108,7 @@ func (c *climb) solve(k, below, above int) error {
 	}
 	c.sure[k] = h.Closed.Mended == 0
 	if below >= 0 && better(&c.out[below], &h) && c.fits(below, k) {
-		h, t = c.taken(below, h.Bound), c.trail[below]
+		h, t = c.taken(below, k, h.Bound), c.trail[below]
 	}
 	c.out[k], c.trail[k], c.done[k] = h, t, true
 	return nil
@@ -120,12 +122,23 @@ func better(a, b *solve.Hour) bool {
 	return a.Cost < b.Cost
 }
 
-// taken is the mix of rung k as another rung takes it, with what that one has proven.
-func (c *climb) taken(k int, bound float64) solve.Hour {
-	h := c.out[k]
+// taken is the mix of rung from as rung k takes it, with the bound proven for that one. What is
+// curtailed counts from what rung k has on offer.
+func (c *climb) taken(from, k int, bound float64) solve.Hour {
+	h := c.out[from]
 	h.Bound = min(bound, h.Cost)
 	if h.Cost != 0 {
 		h.Gap = (h.Cost - h.Bound) / math.Abs(h.Cost)
+	}
+	h.Dispatch = slices.Clone(h.Dispatch)
+	for _, i := range c.swept {
+		u, was, d := &c.hours[k].Units[i], &c.hours[from].Units[i], &h.Dispatch[i]
+		if !u.Renewable || u.MaxMW == was.MaxMW && u.Count == was.Count {
+			continue
+		}
+		h.CurtailedMW -= d.CurtailedMW
+		d.CurtailedMW = max(float64(u.Count)*u.MaxMW-d.OutputMW, 0)
+		h.CurtailedMW += d.CurtailedMW
 	}
 	return h
 }
@@ -140,9 +153,9 @@ func (c *climb) between(lo, hi int) error {
 		}
 		switch {
 		case c.sure[hi] && c.grows(k, hi) && c.fits(hi, k):
-			c.out[k], c.trail[k], c.done[k], c.sure[k] = c.out[hi], c.trail[hi], true, true
+			c.out[k], c.trail[k], c.done[k], c.sure[k] = c.taken(hi, k, c.out[hi].Bound), c.trail[hi], true, true
 		case c.sure[hi] && c.grows(k, hi) && c.fits(lo, k) && c.close(lo, hi):
-			c.out[k], c.trail[k], c.done[k], c.sure[k] = c.taken(lo, c.out[hi].Bound), c.trail[lo], true, true
+			c.out[k], c.trail[k], c.done[k], c.sure[k] = c.taken(lo, k, c.out[hi].Bound), c.trail[lo], true, true
 		default:
 			mid := (lo + hi) / 2
 			if !c.monotone(lo, hi) {
@@ -183,10 +196,27 @@ func (c *climb) close(lo, hi int) bool {
 	return a.Status == solve.Secure && a.Cost-b.Bound <= gap*math.Abs(a.Cost)
 }
 
-// fits tells whether the swept resources can do on rung k what they do in the mix of rung from.
+// fits tells whether the swept resources can do on rung k what they do in the mix of rung from,
+// and do it there in closed loop just so.
 func (c *climb) fits(from, k int) bool {
 	for _, i := range c.swept {
-		if !fits(&c.hours[k].Units[i], &c.hours[from].Units[i], &c.out[from].Dispatch[i]) {
+		d := &c.out[from].Dispatch[i]
+		if !fits(&c.hours[k].Units[i], &c.hours[from].Units[i], d) || !c.actsAlike(from, k, i, d) {
+			return false
+		}
+	}
+	return true
+}
+
+// actsAlike tells whether what a swept resource holds acts in closed loop on rung k as it was proven
+// on rung from: droop and rate limits count on the rating, which may grow with the rungs.
+func (c *climb) actsAlike(from, k, swept int, d *solve.Dispatch) bool {
+	r := &c.rungs[k].Resources[swept]
+	if d.ResponseMW <= roundingMW && d.DownMW <= roundingMW || r.Base() == c.rungs[from].Resources[swept].Base() {
+		return true
+	}
+	for _, m := range c.rungs[k].Models {
+		if m.Shape == r.Response.Shape || m.Shape == r.Down.Shape {
 			return false
 		}
 	}

@@ -5,11 +5,13 @@ import (
 	"math"
 	"path/filepath"
 	"reflect"
+	"slices"
 	"testing"
 	"time"
 
 	"evenkeel/fleet"
 	"evenkeel/limits"
+	"evenkeel/limits/dynamic"
 	"evenkeel/solve"
 )
 
@@ -115,6 +117,97 @@ func TestLadderWhereMoreIsDear(t *testing.T) {
 	}
 	if mended == 0 || !(saved > 0) {
 		t.Errorf("%d mends, %.3f saved by 4 MW: these hours test nothing", mended, saved)
+	}
+}
+
+// Where the rating of a resource with a model grows, its droop grows with it: what was proven on
+// one rung says nothing of the next. Every mix of the ladder holds when simulated anew.
+func TestLadderOfRatings(t *testing.T) {
+	c, found := fleet.Read(filepath.Join("..", "..", "testdata", "skerra", "case.yaml"))
+	if c == nil {
+		t.Fatal(found)
+	}
+	battery := slices.IndexFunc(c.Resources, func(r fleet.Resource) bool { return r.Name == "Holm battery" })
+	var rungs []*fleet.Case
+	for _, times := range []float64{0.25, 0.75, 1, 1.5, 3} {
+		r := *c
+		r.Resources = slices.Clone(c.Resources)
+		r.Resources[battery].PowerMW *= times
+		rungs = append(rungs, &r)
+	}
+	ladder := NewLadder(rungs, []int{battery}, solve.Options{})
+	var sim dynamic.Simulator
+	for _, i := range []int{1220, 1769, 5000} {
+		out, err := ladder.Hour(context.Background(), i)
+		if err != nil {
+			t.Fatal(err)
+		}
+		for k, m := range out {
+			if m.Status != solve.Secure {
+				t.Errorf("hour %d, rung %d: %s", i, k, m.Why)
+				continue
+			}
+			h := rungs[k].Hour(i, fleet.HourOptions{})
+			on := solve.NewOnline(rungs[k], h, m.Dispatch, m.UnservedMW)
+			for _, l := range h.Losses {
+				if !l.Single || l.Over {
+					continue
+				}
+				lost := dynamic.Loss{MW: l.FixedMW}
+				on.Lose(&lost, l.Members[0], 1)
+				if lost.MW <= 0 {
+					continue
+				}
+				o := sim.Run(&on.Sys, []dynamic.Loss{lost}, ladder.solvers[k].ClosedOptions())
+				if o.RoCoFHzPerS > c.Limits.MaxHzPerS+solve.ClosedTolHz || o.NadirHz > c.Limits.NadirHz+solve.ClosedTolHz || o.SteadyHz > c.Limits.SteadyHz+solve.ClosedTolHz {
+					t.Errorf("hour %d, rung %d: the loss of %s reaches %.4f Hz/s, %.4f Hz, %.4f Hz in the steady band", i, k, l.Name, o.RoCoFHzPerS, o.NadirHz, o.SteadyHz)
+				}
+			}
+		}
+	}
+}
+
+// A mix taken from another rung is told by its own rung: wind that grows curtails more.
+func TestLadderOfWind(t *testing.T) {
+	c, found := fleet.Read(filepath.Join("..", "..", "testdata", "skerra", "case.yaml"))
+	if c == nil {
+		t.Fatal(found)
+	}
+	wind := slices.IndexFunc(c.Resources, func(r fleet.Resource) bool { return r.Name == "Vestan wind" })
+	var rungs []*fleet.Case
+	for _, times := range []float64{1, 1.1, 1.2, 1.4, 2} {
+		r := *c
+		r.Resources = slices.Clone(c.Resources)
+		most := slices.Clone(c.Resources[wind].MaxMW.Series)
+		for i := range most {
+			most[i] *= times
+		}
+		r.Resources[wind].MaxMW.Series = most
+		rungs = append(rungs, &r)
+	}
+	ladder := NewLadder(rungs, []int{wind}, solve.Options{})
+	for _, i := range []int{0, 97} {
+		out, err := ladder.Hour(context.Background(), i)
+		if err != nil {
+			t.Fatal(err)
+		}
+		for k, m := range out {
+			h := rungs[k].Hour(i, fleet.HourOptions{})
+			all := 0.0
+			for u, d := range m.Dispatch {
+				if !h.Units[u].Renewable {
+					continue
+				}
+				curtailed := max(float64(h.Units[u].Count)*h.Units[u].MaxMW-d.OutputMW, 0)
+				all += curtailed
+				if math.Abs(d.CurtailedMW-curtailed) > 1e-3 {
+					t.Errorf("hour %d, rung %d: %s curtails %.3f MW, told %.3f", i, k, c.Resources[u].Name, curtailed, d.CurtailedMW)
+				}
+			}
+			if math.Abs(m.CurtailedMW-all) > 1e-3 {
+				t.Errorf("hour %d, rung %d: %.3f MW are curtailed, told %.3f", i, k, all, m.CurtailedMW)
+			}
+		}
 	}
 }
 
