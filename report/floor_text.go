@@ -27,7 +27,11 @@ func FloorText(w io.Writer, r *floor.Result) error {
 	for i := range r.Charts {
 		p.chart(i)
 	}
-	p.text("Response and kinetic energy count as they are left after the loss. Where a loss has two lines, more response than in the second saves no more inertia. A cell is the larger of what the rows ask for and what closed-loop bisection finds, relays left out.", "")
+	above := ""
+	if r.Case.Above != nil && r.Year != nil {
+		above = "; what losses of load need counts in what follows"
+	}
+	p.text("Response and kinetic energy count as they are left after the loss. Where a loss has two lines, more response than in the second saves no more inertia. A cell is the larger of what the rows ask for and what closed-loop bisection finds, relays left out. Losses of infeed only"+above+".", "")
 	if r.Year != nil {
 		p.lacking()
 		p.ways()
@@ -77,7 +81,11 @@ func (p *floorPage) chart(i int) {
 	if p.r.Year != nil && slices.ContainsFunc(p.r.Ask.HeldMW, math.IsNaN) {
 		others = " (by default: medians of the tenth of the hours with the largest losses)"
 	}
-	p.text(fmt.Sprintf("Besides %s: %s%s. Load %s MW.", name, othersHeld(p.r, i), others, grouped(k.LoadMW, 0)), "  ")
+	least := ""
+	if math.IsNaN(p.r.Ask.LoadMW) {
+		least = " (the hours' least, which damps least)"
+	}
+	p.text(fmt.Sprintf("Besides %s: %s%s. Load %s MW%s.", name, othersHeld(p.r, i), others, grouped(k.LoadMW, 0), least), "  ")
 	none := 0
 	by := [limits.Kinds]int{}
 	for j := range k.Cells {

@@ -32,7 +32,7 @@ func floorCommand() *cobra.Command {
 	fl.StringVar(&w.Loss, "loss", "", "losses of the charts, `A:B:N`: N from A to B MW (default: 20 up to just above the largest)")
 	fl.StringArrayVar(&w.Axes, "axis", nil, "`SHAPE` or model whose response is a chart's other axis; may be repeated (default: the most held)")
 	fl.StringArrayVar(&w.Held, "held", nil, "response held in the charts, `SHAPE=A:B:N` of an axis, SHAPE=MW of another (default: the median of the hours with the largest losses; 0 with --no-year)")
-	fl.Float64Var(&w.LoadMW, "load", 0, "load in the charts, `MW`; 0: the hours' mean")
+	fl.Float64Var(&w.LoadMW, "load", 0, "load in the charts, `MW`; 0: the hours' least, which damps least")
 	fl.IntVar(&w.Brackets, "brackets", 4, "steps of the rule by the size of the largest loss; 1: none")
 	fl.Float64SliceVar(&w.Policies, "policy", nil, "try this rule too: so many `MWS` online in every hour; may be repeated")
 	fl.BoolVar(&noYear, "no-year", false, "the charts alone, for quick use")

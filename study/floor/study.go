@@ -129,12 +129,13 @@ func (s *Study) settle() {
 	}
 	load := s.ask.LoadMW
 	if math.IsNaN(load) {
-		load = s.c.MeanDemandMW()
-		if n := len(s.ask.Hours); n > 0 {
-			load = 0
-			for _, h := range s.ask.Hours {
-				load += s.c.Load.DemandMW.At(h) / float64(n)
-			}
+		load = math.Inf(1) // the least load damps least: what holds with it holds with more
+		hours := s.ask.Hours
+		if len(hours) == 0 {
+			hours = every(s.c.Hours())
+		}
+		for _, h := range hours {
+			load = min(load, s.c.Load.DemandMW.At(h))
 		}
 	}
 	others := slices.Clone(s.ask.HeldMW)
@@ -243,4 +244,13 @@ func (s *Study) largestMW() float64 {
 		}
 	}
 	return max(most, 1)
+}
+
+// every lists the numbers under n.
+func every(n int) []int {
+	list := make([]int, n)
+	for i := range list {
+		list[i] = i
+	}
+	return list
 }
