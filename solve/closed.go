@@ -47,6 +47,7 @@ func (s *Solver) proven(ctx context.Context, h *fleet.Hour, near []*Trail, t *Tr
 			return out, q, nil
 		}
 		on := NewOnline(s.c, q.m.p.Hour, out.Dispatch, st.unserved)
+		t.calm = [2][]bool{} // of this mix, not of one before
 		failed := s.simulate(sim, on, q.m.p, near, t, st, &out, false)
 		if out.Above != nil && failed == nil { // the other side once this one holds
 			failed = s.simulate(sim, on, q.m.p, near, t, st, &out, true)
