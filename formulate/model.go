@@ -128,6 +128,16 @@ func (p *Problem) Model(instants, over []limits.Instant) *Model {
 			}
 		}
 	}
+	if least := p.Hour.LeastInertiaMWs; least > 0 {
+		r := m.row("least_inertia", ">=", least-p.Hour.LoadInertiaMWs)
+		m.add(m.column("lack", p.LackPerMWs(), 0, inf, false), r, 1)
+		one := Row{InertiaPerMWs: 1, Response: make([]float64, len(p.Shapes))}
+		for c := range units {
+			for i := range units[c] {
+				m.carried(p, c, &units[c][i], r, &one, 1)
+			}
+		}
+	}
 	if p.Above != nil {
 		m.above(p, units, unserved, append(over, p.Grid()...))
 	}

@@ -134,6 +134,13 @@ func Build(c *fleet.Case, h *fleet.Hour) *Problem {
 	return p
 }
 
+// lackHzPerS prices what is lacking of the least inertia: as the MW of a loss that it would cover
+// at this rate of change (common practice: between the usual limits).
+const lackHzPerS = 1
+
+// LackPerMWs is the price of each MW·s that is lacking of Hour.LeastInertiaMWs.
+func (p *Problem) LackPerMWs() float64 { return p.ShortPerMW * 2 * lackHzPerS / p.Limits.NominalHz }
+
 // SteadyOnly lifts the limits of RoCoF and of the nadir, on both sides of nominal, far above
 // anything that could happen.
 func (p *Problem) SteadyOnly() {

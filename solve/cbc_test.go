@@ -100,6 +100,9 @@ func TestAgainstCBC(t *testing.T) {
 			for seed := part; seed < hours; seed += 2 {
 				rng := rand.New(rand.NewPCG(uint64(seed), 21))
 				c, h := randomHour(rng, 10+rng.IntN(31))
+				if seed%3 == 0 { // what a third of them must have online besides
+					h.LeastInertiaMWs = (2 + 10*rng.Float64()) * h.DemandMW
+				}
 				gap := DefaultGap
 				if seed%4 < 2 { // half of the hours to optimality
 					gap = 1e-7

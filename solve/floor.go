@@ -13,17 +13,12 @@ func (m *master) always() int {
 	return 1
 }
 
-// lackHzPerS prices what is lacking of the least inertia: as the MW of a loss that it would cover
-// at this rate of change (common practice: between the usual limits).
-const lackHzPerS = 1
-
 // addLack adds what may be lacking of the least inertia.
 func (m *master) addLack() {
 	m.lack = len(m.sets)
 	mws := m.p.Hour.LeastInertiaMWs
-	price := m.p.ShortPerMW * 2 * lackHzPerS / m.p.Limits.NominalHz
 	m.sets = append(m.sets, len(m.groups))
-	m.groups = append(m.groups, &simplex.Group{Shape: m.rowShapes() - 1, HasOff: true, Cols: []simplex.Column{{}, {Cost: mws * price, R: mws}}})
+	m.groups = append(m.groups, &simplex.Group{Shape: m.rowShapes() - 1, HasOff: true, Cols: []simplex.Column{{}, {Cost: mws * m.p.LackPerMWs(), R: mws}}})
 }
 
 // floorRow asks for the least inertia.
