@@ -52,6 +52,11 @@ func runCBC(t testing.TB, cbc, mps string, gap float64) cbcAnswer {
 		if v, ok := strings.CutPrefix(line, "Objective value:"); ok {
 			a.cost, _ = strconv.ParseFloat(strings.TrimSpace(v), 64)
 		}
+		if v, ok := strings.CutPrefix(line, "Optimal objective "); ok { // of a model without whole numbers
+			v, _, _ = strings.Cut(v, " ")
+			a.cost, _ = strconv.ParseFloat(v, 64)
+			solved = true
+		}
 		if v, ok := strings.CutPrefix(line, "Time (Wallclock seconds):"); ok {
 			seconds, _ := strconv.ParseFloat(strings.TrimSpace(v), 64)
 			a.solving = time.Duration(seconds * float64(time.Second))
