@@ -161,9 +161,11 @@ func (s *Study) Hour(ctx context.Context, i int) (Record, error) {
 		if err != nil {
 			return Record{}, err
 		}
-		// Nobody must hold the product: the mix without it will do as well.
+		// Nobody must hold the product: the mix without it will do as well, but proves nothing of those with it.
 		if first.Status == h.Status && first.Cost < h.Cost || first.Status == solve.Secure && h.Status != solve.Secure {
+			bound := min(h.Bound, first.Bound)
 			h = *first
+			h.Bound = bound
 		}
 		r.Points = append(r.Points, s.point(&h))
 	}

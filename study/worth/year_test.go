@@ -285,3 +285,32 @@ func TestPlanFaults(t *testing.T) {
 		}
 	}
 }
+
+// Where nobody holds the product, as the mix without it is cheaper, the bound is still that of the hours with it.
+func TestBoundIsThatOfTheHoursWithTheProduct(t *testing.T) {
+	kept := 0
+	for seed := range uint64(4) {
+		c, _, p := invented(t, seed, quick)
+		opt := solve.Options{Gap: 0.1}
+		s, records := study(t, worth.Plan{Case: c, Product: p, VolumesMW: []float64{0, 40}, ActivationsS: []float64{0.2, 1, 3, 6, 9, 20}, Options: opt, Hours: []int{0, 20, 40, 60, 80, 100, 120, 140, 160, 180, 200, 220}})
+		for i := range records {
+			r := &records[i]
+			for k, other := range s.Others {
+				h, err := solve.New(other, opt).Hour(context.Background(), other.Hour(r.Index, fleet.HourOptions{}))
+				if err != nil {
+					t.Fatal(err)
+				}
+				pt := &r.Points[2+k]
+				if pt.Bound > h.Bound {
+					t.Errorf("seed %d, hour %d, %v s: a bound of %v where %v is proven", seed, r.Index, s.ActivationsS[k], pt.Bound, h.Bound)
+				}
+				if pt.Cost < h.Cost {
+					kept++
+				}
+			}
+		}
+	}
+	if kept == 0 {
+		t.Error("no mix without the product is kept: these hours test nothing")
+	}
+}
