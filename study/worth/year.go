@@ -154,7 +154,11 @@ func (s *Study) Hour(ctx context.Context, i int) (Record, error) {
 		r.With = mixOf(last)
 	}
 	for k := range hours {
-		r.Points = append(r.Points, s.point(&hours[k]))
+		p := s.point(&hours[k])
+		for _, less := range r.Points { // what fewer MW cost can be had with more: the rows of an hour that was mended bound its own mix alone
+			p.Bound = min(p.Bound, less.Cost)
+		}
+		r.Points = append(r.Points, p)
 	}
 	for k, c := range s.Others {
 		h, err := s.others[k].Hour(ctx, c.Hour(index, fleet.HourOptions{StartSpreadH: s.Options.StartSpreadH}))

@@ -179,6 +179,11 @@ func TestProductNeverCostsInClosedLoop(t *testing.T) {
 				if zero := r.Points[0]; pt.Short || pt.Cost > zero.Cost*(1+gap) {
 					t.Errorf("%s, hour %d, point %d: short %v, %v, without it %v", p.Name, r.Index, k, pt.Short, pt.Cost, zero.Cost)
 				}
+				for j := range min(k, 5) { // fewer MW are to be had with more; not so at another activation time
+					if pt.Bound > r.Points[j].Cost && k < 5 {
+						t.Errorf("%s, hour %d: volume %d is bound by %v, volume %d costs %v", p.Name, r.Index, k, pt.Bound, j, r.Points[j].Cost)
+					}
+				}
 				held += pt.HeldMW
 				if pt.Mended {
 					mended++
