@@ -174,3 +174,34 @@ func TestBadProjects(t *testing.T) {
 		}
 	}
 }
+
+// With part of the energy that all of its MW need, a store offers that part of its response and of its
+// synthetic inertia: a fall to the nadir takes no more out of it than is in it.
+func TestEnergyLimitsSyntheticInertia(t *testing.T) {
+	c := skerra(t)
+	p := mustProject(t, c, "project: wheel\nkind: flywheel\nactivation_s: 0.2\nhold_s: 2\nsynthetic_inertia: {mws_per_mw: 20, filter_s: 0.1}"+projectMoney)
+	need, err := p.Energy(c, p.ActivationS)
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, share := range []float64{0.01, 0.5, 1, 2} {
+		d := Design{MW: 10, EnergyMWh: share * 10 * need.TotalMWh, ActivationS: p.ActivationS}
+		mw, err := p.ResponseMW(c, d)
+		if err != nil {
+			t.Fatal(err)
+		}
+		built, err := p.In(c, d.MW, mw, d.ActivationS)
+		if err != nil {
+			t.Fatal(err)
+		}
+		r := &built.Resources[p.Resource(c)]
+		if want := 20 * 10 * min(share, 1); math.Abs(r.SyntheticMWs.Const-want) > 1e-4 {
+			t.Errorf("with %g of the energy %g MW·s are on offer, want %g", share, r.SyntheticMWs.Const, want)
+		}
+		left := 1 - c.Limits.NadirHz/c.Limits.NominalHz
+		takes := (r.SyntheticMWs.Const*(1-left*left) + mw*(2+0.1)) / 3600 / math.Sqrt(p.EfficiencyPct/100)
+		if takes > d.EnergyMWh*(1+1e-6) {
+			t.Errorf("an event takes %g MWh of %g", takes, d.EnergyMWh)
+		}
+	}
+}

@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"math"
 	"os"
 	"runtime"
 	"runtime/debug"
@@ -121,7 +122,7 @@ func (f mixFlags) check() error {
 		return bad("--workers is %d, want at least 1", f.workers)
 	case !(f.gap >= 0 && f.gap < 1):
 		return bad("--gap is %g, want at least 0 and less than 1 (0.001 is 0.1 %%)", f.gap)
-	case !(f.startSpread >= 0):
+	case !(f.startSpread >= 0) || math.IsInf(f.startSpread, 0):
 		return bad("--start-spread is %g, want 0 or more hours", f.startSpread)
 	case f.replace && f.resume:
 		return bad("--replace and --resume exclude each other")

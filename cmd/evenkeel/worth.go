@@ -90,8 +90,9 @@ func runWorth(cmd *cobra.Command, path string, f worthFlags) error {
 	} else if f.volumes != "" || len(f.activations) > 0 || f.at != 0 {
 		return bad("--volumes, --activation and --at are about a product: give --product FILE")
 	}
-	if !(f.at >= 0) {
-		return bad("--at is %g, want 0 or more a MW and year", f.at)
+	const dearest = 1e12 // far above any price, and still a number that figures have room for
+	if !(f.at >= 0 && f.at <= dearest) {
+		return bad("--at is %g, want 0 or more a MW and year, at most %g", f.at, dearest)
 	}
 	if plan.Hours, err = f.list(c); err != nil {
 		return err

@@ -23,7 +23,7 @@ func (s *Study) calendar(r *Result, of [][][]Rung) []Cell {
 		x, bare := &of[i][r.Ladder][r.Rung], &of[i][r.Ladder][0]
 		c.Hours++
 		income := x.Paid[s.Rule].Net()
-		held := s.Plan.held(x, r.Year.HoldMW)
+		held := s.Plan.held(x)
 		if held > leastMW && income > leastPay {
 			c.Paid++
 		}

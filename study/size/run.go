@@ -15,7 +15,7 @@ type Rung struct {
 	Cost, Bound                float64
 	Short                      bool
 	HeldMW, DownMW, InertiaMWs float64
-	OnShare                    float64 // of a condenser's machines
+	OnMVA                      float64 // of a condenser
 	Paid                       [Rules]Income
 	// Taker is what the same project earns, its own cost paid, by its best answer to the prices of
 	// the rung with nothing built.
@@ -154,8 +154,8 @@ func (plan *Plan) record(h *solve.Hour, in *fleet.Hour) Rung {
 	d, u := &h.Dispatch[plan.Resource], &in.Units[plan.Resource]
 	r := Rung{Cost: h.Cost, Bound: h.Bound, Short: h.Status == solve.Short, HeldMW: d.ResponseMW, DownMW: d.DownMW, InertiaMWs: d.InertiaMWs}
 	condenser := plan.Project.Kind == fleet.CondenserProject
-	if condenser && u.Count > 0 {
-		r.OnShare = float64(d.On) / float64(u.Count)
+	if condenser {
+		r.OnMVA = float64(d.On) * plan.Project.UnitMVA
 	}
 	for rule, p := range plan.pricesOf(h) {
 		i := Income{Response: p.response * d.ResponseMW, Down: p.down * d.DownMW, Inertia: p.inertia * d.InertiaMWs,

@@ -230,3 +230,33 @@ func TestMoreOfEverythingNeverCostsMore(t *testing.T) {
 		}
 	}
 }
+
+// What is on of a condenser is what its kinetic energy says, in a mix taken over from a smaller
+// design too.
+func TestCondenserIsOnAsItsInertiaSays(t *testing.T) {
+	c, p := skerra(t)
+	condenser := *p
+	condenser.Kind, condenser.UnitMVA, condenser.InertiaS, condenser.LossesShare, condenser.OnCostPerMVAh = fleet.CondenserProject, 20, 8, 0.02, 0.1
+	plan, err := NewPlan(c, &condenser, Grid{SizesMW: []float64{20, 40, 60, 80, 120, 160, 240}})
+	if err != nil {
+		t.Fatal(err)
+	}
+	climber := plan.Climber(solve.Options{Gap: gap})
+	on := 0.0
+	for _, h := range []int{0, 582, 679} {
+		out, err := climber.Hour(context.Background(), h)
+		if err != nil {
+			t.Fatal(err)
+		}
+		for k := range out[0] {
+			r := &out[0][k]
+			if want := r.InertiaMWs / condenser.InertiaS; math.Abs(plan.held(r)-want) > 1e-6 {
+				t.Errorf("hour %d: of %g MVA %g are on by the count of machines, %g by their inertia", h, plan.Ladders[0].HoldMW[k], plan.held(r), want)
+			}
+			on += r.OnMVA
+		}
+	}
+	if on == 0 {
+		t.Error("no condenser is on: these hours test nothing")
+	}
+}

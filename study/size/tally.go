@@ -37,7 +37,7 @@ func (plan *Plan) Years(hours [][][]Rung) [][]Year {
 				y.Saving += up * (bare.Cost - r.Cost)
 				y.SavingAtLeast += up * (bare.Bound - r.Cost)
 				y.SavingAtMost += up * (bare.Cost - r.Bound)
-				held := plan.held(r, y.HoldMW)
+				held := plan.held(r)
 				y.MeanMW += held / float64(len(hours))
 				if held > leastMW {
 					y.HeldH += up
@@ -66,10 +66,10 @@ const (
 	leastPay = 1e-2 // currency an hour: below it nothing is paid
 )
 
-// held is how much of the project is in use, of so many MW or MVA.
-func (plan *Plan) held(r *Rung, sizeMW float64) float64 {
+// held is how much of the project is in use, MW or MVA.
+func (plan *Plan) held(r *Rung) float64 {
 	if plan.Project.Kind == fleet.CondenserProject {
-		return r.OnShare * sizeMW
+		return r.OnMVA
 	}
 	head := 2 / plan.Case.Limits.NominalHz * plan.Case.Limits.MaxHzPerS // MW that 1 MW·s takes
 	up := r.HeldMW

@@ -47,7 +47,7 @@ type Cell struct {
 	PrimaryMW          float64     // the least that keeps every limit; +Inf where Beyond
 	// The interval after the loss on which the limit that governs is met with equality.
 	FromS, ToS float64
-	// InertiaPerPrimary is how many MW·s 1 MW of primary reserve replaces; 0 where inertia is of
+	// InertiaPerPrimary is how many MW·s 1 MW of primary reserve replaces, to first order; 0 where inertia is of
 	// no help at that instant or nothing governs.
 	InertiaPerPrimary float64
 	Rates             []Rate // one a shape; that of Primary is 1
@@ -94,12 +94,13 @@ func (x *Exchange) Check() error {
 // worst; R is raised until that one holds, and so on: a cutting plane in one dimension, which
 // comes from below and ends where nothing is broken. The row that ends it has
 // Φ_p(t*)·R + Σ Φ_s(t*)·R_s + (2X/f0)·E = P·t* there, so that one MW of shape s stands for
-// Φ_s(t*)/Φ_p(t*) MW of primary reserve and for Φ_s(t*)/(2X/f0) MW·s: the instant t* itself moves,
-// but at the worst instant that changes nothing to first order (the envelope theorem).
+// Φ_s(t*)/Φ_p(t*) MW of primary reserve: the instant t* itself moves, but at the worst instant that
+// changes nothing to first order (the envelope theorem). A MW·s gives 2X/f0 there, less what it takes
+// from the damping of the load, whose rate D·f0/(2·E) falls as E grows (see inertiaGives).
 func (x *Exchange) Cells() []Cell {
 	var out []Cell
 	for _, e := range x.InertiaMWs {
-		scan := limits.NewScan(x.Limits, x.Shapes, x.DampingMWPerHz*x.Limits.NominalHz/(2*e), x.DampingMWPerHz)
+		scan := limits.NewScan(x.Limits, x.Shapes, x.dampingRate(e), x.DampingMWPerHz)
 		for _, p := range x.LossMW {
 			out = append(out, x.cell(scan, e, p))
 		}
@@ -118,14 +119,16 @@ func (x *Exchange) cell(scan *limits.Scan, e, p float64) Cell {
 		return c
 	}
 	primary := row.Response[x.Primary]
-	if row.InertiaPerMWs > 0 {
-		c.InertiaPerPrimary = primary / row.InertiaPerMWs
+	held[x.Primary] = c.PrimaryMW
+	inertia := x.inertiaGives(row, e, p, held)
+	if inertia > 0 {
+		c.InertiaPerPrimary = primary / inertia
 	}
 	for s := range x.Shapes {
 		r := &c.Rates[s]
 		r.PrimaryMW = row.Response[s] / primary
-		if row.InertiaPerMWs > 0 {
-			r.InertiaMWs = row.Response[s] / row.InertiaPerMWs
+		if inertia > 0 {
+			r.InertiaMWs = row.Response[s] / inertia
 		}
 		if s == x.Primary {
 			r.PrimaryMWByStep = 1
@@ -137,6 +140,32 @@ func (x *Exchange) cell(scan *limits.Scan, e, p float64) Cell {
 		r.PrimaryMWByStep = (c.PrimaryMW - with.PrimaryMW) / stepMW
 	}
 	return c
+}
+
+// inertiaGives is what one MW·s more gives in a row that is met with equality, in the row's units, for
+// each MW·s. The row counts damping by its rate a0 = D·f0/(2·E), so that it changes by
+// 2X/f0 − a0/E · d/da0(Σ Φ_s·R_s − ∫e^(−a0·(t−τ))dτ·P); the latter is a central difference. It is
+// below 0 where a heavier system is slower to come back.
+func (x *Exchange) inertiaGives(row *limits.Row, e, p float64, heldMW []float64) float64 {
+	a0 := x.dampingRate(e)
+	if row.InertiaPerMWs == 0 || a0 == 0 || a0 == limits.MaxDampingPerS {
+		return row.InertiaPerMWs
+	}
+	const step = 1e-4 // of the rate
+	beyond := func(a0 float64) float64 {
+		r := x.Limits.Row(row.At, x.Shapes, a0)
+		sum := -r.LossS * p
+		for s, mw := range heldMW {
+			sum += r.Response[s] * mw
+		}
+		return sum
+	}
+	return row.InertiaPerMWs - (beyond(a0*(1+step))-beyond(a0*(1-step)))/(2*step*e)
+}
+
+// dampingRate is the rate at which the load damps at a kinetic energy, 1/s.
+func (x *Exchange) dampingRate(e float64) float64 {
+	return min(x.DampingMWPerHz*x.Limits.NominalHz/(2*e), limits.MaxDampingPerS)
 }
 
 const excessTol = 1e-9 // share of the loss; a row broken by less holds

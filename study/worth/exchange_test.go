@@ -182,3 +182,31 @@ func TestExchangeHolds(t *testing.T) {
 		}
 	})
 }
+
+// What a MW·s replaces is the slope of the least reserve, damping of the load and its falling rate
+// counted in (central differences of the least reserve), whether the nadir or the return governs.
+func TestInertiaReplacesWithDamping(t *testing.T) {
+	back := corridor(0.8)
+	back.NadirHz, back.SteadyHz, back.SteadyByS = 1.2, 0.3, 20
+	for _, at := range []struct {
+		limits  limits.Limits
+		e       float64
+		governs worth.Governs
+	}{
+		{corridor(0.8), 1800, worth.ByNadir}, {corridor(0.8), 3000, worth.ByNadir}, {back, 6000, worth.ByReturn},
+	} {
+		const step = 0.1
+		q := worth.Exchange{
+			Limits: at.limits, DampingMWPerHz: 4, Names: []string{"slow", "fast"},
+			Shapes: []limits.Shape{shape(t, limits.Timing{RampS: 15}), shape(t, limits.Timing{DelayS: 0.2, RampS: 0.5})},
+			HeldMW: []float64{0, 5}, InertiaMWs: []float64{at.e - step, at.e, at.e + step}, LossMW: []float64{55},
+		}
+		c := q.Cells()
+		if c[1].Governs != at.governs {
+			t.Fatalf("at %v MW·s %v governs, want %v", at.e, c[1].Governs, at.governs)
+		}
+		want := (c[0].PrimaryMW - c[2].PrimaryMW) / (2 * step)
+		near(t, fmt.Sprintf("MW of slow for 1 MW·s at %v", at.e), 1/c[1].InertiaPerPrimary, want, 1e-3*want)
+		near(t, fmt.Sprintf("MW·s for 1 MW of fast at %v", at.e), c[1].Rates[1].InertiaMWs, c[1].Rates[1].PrimaryMW/want, 2e-3*c[1].Rates[1].PrimaryMW/want)
+	}
+}

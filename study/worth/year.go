@@ -154,16 +154,22 @@ func (s *Study) Hour(ctx context.Context, i int) (Record, error) {
 		r.With = mixOf(last)
 	}
 	for k := range hours {
-		r.Points = append(r.Points, s.point(&hours[k]))
+		p := s.point(&hours[k])
+		for _, less := range r.Points { // what fewer MW cost can be had with more: the rows of an hour that was mended bound its own mix alone
+			p.Bound = min(p.Bound, less.Cost)
+		}
+		r.Points = append(r.Points, p)
 	}
 	for k, c := range s.Others {
 		h, err := s.others[k].Hour(ctx, c.Hour(index, fleet.HourOptions{StartSpreadH: s.Options.StartSpreadH}))
 		if err != nil {
 			return Record{}, err
 		}
-		// Nobody must hold the product: the mix without it will do as well.
+		// Nobody must hold the product: the mix without it will do as well, but proves nothing of those with it.
 		if first.Status == h.Status && first.Cost < h.Cost || first.Status == solve.Secure && h.Status != solve.Secure {
+			bound := min(h.Bound, first.Bound)
 			h = *first
+			h.Bound = bound
 		}
 		r.Points = append(r.Points, s.point(&h))
 	}

@@ -179,6 +179,11 @@ func TestProductNeverCostsInClosedLoop(t *testing.T) {
 				if zero := r.Points[0]; pt.Short || pt.Cost > zero.Cost*(1+gap) {
 					t.Errorf("%s, hour %d, point %d: short %v, %v, without it %v", p.Name, r.Index, k, pt.Short, pt.Cost, zero.Cost)
 				}
+				for j := range min(k, 5) { // fewer MW are to be had with more; not so at another activation time
+					if pt.Bound > r.Points[j].Cost && k < 5 {
+						t.Errorf("%s, hour %d: volume %d is bound by %v, volume %d costs %v", p.Name, r.Index, k, pt.Bound, j, r.Points[j].Cost)
+					}
+				}
 				held += pt.HeldMW
 				if pt.Mended {
 					mended++
@@ -283,5 +288,34 @@ func TestPlanFaults(t *testing.T) {
 		if _, err := s.Exchange(a); err == nil {
 			t.Errorf("%s: taken", name)
 		}
+	}
+}
+
+// Where nobody holds the product, as the mix without it is cheaper, the bound is still that of the hours with it.
+func TestBoundIsThatOfTheHoursWithTheProduct(t *testing.T) {
+	kept := 0
+	for seed := range uint64(4) {
+		c, _, p := invented(t, seed, quick)
+		opt := solve.Options{Gap: 0.1}
+		s, records := study(t, worth.Plan{Case: c, Product: p, VolumesMW: []float64{0, 40}, ActivationsS: []float64{0.2, 1, 3, 6, 9, 20}, Options: opt, Hours: []int{0, 20, 40, 60, 80, 100, 120, 140, 160, 180, 200, 220}})
+		for i := range records {
+			r := &records[i]
+			for k, other := range s.Others {
+				h, err := solve.New(other, opt).Hour(context.Background(), other.Hour(r.Index, fleet.HourOptions{}))
+				if err != nil {
+					t.Fatal(err)
+				}
+				pt := &r.Points[2+k]
+				if pt.Bound > h.Bound {
+					t.Errorf("seed %d, hour %d, %v s: a bound of %v where %v is proven", seed, r.Index, s.ActivationsS[k], pt.Bound, h.Bound)
+				}
+				if pt.Cost < h.Cost {
+					kept++
+				}
+			}
+		}
+	}
+	if kept == 0 {
+		t.Error("no mix without the product is kept: these hours test nothing")
 	}
 }
