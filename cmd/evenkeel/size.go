@@ -32,7 +32,8 @@ func sizeCommand() *cobra.Command {
 			"what the system saves and what the owner earns against what it costs to build: net value a year, break-even\n" +
 			"capital cost, the size after which the next MW no longer pays, the energy that goes with it, and what matters most.\n\n" +
 			"The gap is noise in a difference of two runs, so it is smaller here than elsewhere. --every 7 looks at every\n" +
-			"7th hour and counts up to a year. An interrupt leaves whole files; --resume goes on to the same bytes.",
+			"7th hour and counts up to a year. An interrupt leaves whole files; --resume goes on to the same bytes.\n" +
+			"Exit codes: 0 all hours secure without the project, 3 some hours short, 2 bad input, 1 failure.",
 		Args: caseFile,
 		RunE: func(cmd *cobra.Command, args []string) error { return sizeUp(cmd, args[0], &f) },
 	}
@@ -99,10 +100,15 @@ func sizeUp(cmd *cobra.Command, path string, f *sizeFlags) error {
 	if err := endStudy(&f.studyFlags, path, started); err != nil {
 		return err
 	}
-	if f.quiet {
-		return nil
+	if !f.quiet {
+		if err := report.SizeText(cmd.OutOrStdout(), study); err != nil {
+			return err
+		}
 	}
-	return report.SizeText(cmd.OutOrStdout(), study)
+	if study.Study.Years[0][0].ShortH > 0 {
+		return exit{code: exitShort}
+	}
+	return nil
 }
 
 // readProject vets a project for a command that uses it.
