@@ -67,6 +67,7 @@ type reader struct {
 	clockLost bool        // what should set them cannot be used
 
 	index       map[string]int // resources by name
+	partial     bool           // a list of resources seems to stand under a misspelt key
 	shapeIndex  map[string]int // shapes by name
 	shapeInputs []shapeInput   // one a shape
 

@@ -92,7 +92,12 @@ func (r *reader) resources(s *section) {
 			r.place(res, in)
 		}
 	}
-	if len(r.c.Resources) == 0 {
+	for key := range s.entries {
+		if near := nearestName(key, 2, func(i int) string { return [...]string{"machines", "converters"}[i] }); near != "" && near != key && !s.has(near) {
+			r.partial = true // its fault is reported; all that names its resources is no fault of its own
+		}
+	}
+	if len(r.c.Resources) == 0 && !r.partial {
 		s.missing("machines", "machines, converters or both")
 	}
 }

@@ -252,6 +252,7 @@ func (r *reader) members(s *section) []int {
 		}
 		i, ok := r.resource(n.Value)
 		switch {
+		case !ok && r.partial:
 		case !ok:
 			r.fault(n.Line, key, "the unknown resource "+quoted(n.Value), r.likelyResource(n.Value))
 		case seen[i]:

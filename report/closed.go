@@ -122,7 +122,7 @@ func (p *page) closedLoop() {
 	}
 	t := tallyClosed(p.hours)
 	p.section("In closed loop (governors and converters acting on the frequency they measure)")
-	p.fact("  proven", fmt.Sprintf("%s; the worst losses reach %s Hz/s, %s Hz below nominal, %s Hz in the steady band", hoursOf(t.proven), fixed(t.rocof, 3), fixed(t.nadir, 3), fixed(t.steady, 3)))
+	p.fact("  proven", fmt.Sprintf("%s; the worst losses reach %s Hz/s, %s Hz below nominal, %s Hz in the steady band (limits are kept to 1 mHz)", hoursOf(t.proven), fixed(t.rocof, 3), fixed(t.nadir, 3), fixed(t.steady, 3)))
 	if p.c.Above != nil {
 		p.fact("", fmt.Sprintf("losses of load %s Hz/s, %s Hz above nominal, %s Hz in the band", fixed(t.over[0], 3), fixed(t.over[1], 3), fixed(t.over[2], 3)))
 	}
