@@ -7,6 +7,7 @@ import (
 	"github.com/spf13/cobra"
 
 	"evenkeel/report"
+	"evenkeel/solve"
 	"evenkeel/study/floor"
 	"evenkeel/study/work"
 )
@@ -27,7 +28,7 @@ func floorCommand() *cobra.Command {
 		Args: caseFile,
 		RunE: func(cmd *cobra.Command, args []string) error { return floors(cmd, args[0], &f, w, noYear) },
 	}
-	f.add(cmd)
+	f.add(cmd, solve.DefaultGap)
 	fl := cmd.Flags()
 	fl.StringVar(&w.Loss, "loss", "", "losses of the charts, `A:B:N`: N from A to B MW (default: 20 up to just above the largest)")
 	fl.StringArrayVar(&w.Axes, "axis", nil, "`SHAPE` or model whose response is a chart's other axis; may be repeated (default: the most held)")
@@ -41,7 +42,7 @@ func floorCommand() *cobra.Command {
 
 func floors(cmd *cobra.Command, path string, f *studyFlags, w floor.Words, noYear bool) error {
 	started := time.Now()
-	if err := f.check("floor"); err != nil {
+	if err := f.check(cmd); err != nil {
 		return err
 	}
 	c, err := read(cmd, path, f.quiet)

@@ -4,7 +4,6 @@ import (
 	"context"
 	"errors"
 	"fmt"
-	"math"
 	"os"
 	"runtime"
 	"runtime/debug"
@@ -20,13 +19,9 @@ import (
 )
 
 type mixFlags struct {
-	out, hours       string
-	workers          int
-	gap, startSpread float64
-	withoutLimits    bool
-	noComparison     bool
-	replace, resume  bool
-	quiet            bool
+	runFlags
+	withoutLimits bool
+	noComparison  bool
 }
 
 func mixCommand() *cobra.Command {
@@ -41,23 +36,16 @@ func mixCommand() *cobra.Command {
 		Args: caseFile,
 		RunE: func(cmd *cobra.Command, args []string) error { return mix(cmd, args[0], f) },
 	}
+	f.add(cmd, "run", solve.DefaultGap)
 	fl := cmd.Flags()
-	fl.StringVar(&f.out, "out", "", "folder to write the run to")
-	fl.StringVar(&f.hours, "hours", "", "solve hours A to B-1 only, counted from 0, as `A:B`")
-	fl.IntVar(&f.workers, "workers", runtime.NumCPU(), "hours solved at the same time; results do not depend on it")
-	fl.Float64Var(&f.gap, "gap", solve.DefaultGap, "relative gap between cost and proven bound; 0 solves to optimality")
-	fl.Float64Var(&f.startSpread, "start-spread", 0, "spread start costs over this many `hours` of running; 0 leaves them out")
 	fl.BoolVar(&f.withoutLimits, "without-limits", false, "dispatch without frequency limits; the replay says what they would have needed")
 	fl.BoolVar(&f.noComparison, "no-comparison", false, "do not also solve without limits (no cost of security)")
-	fl.BoolVar(&f.replace, "replace", false, "replace a run that --out already holds")
-	fl.BoolVar(&f.resume, "resume", false, "go on with the interrupted run that --out holds")
-	fl.BoolVar(&f.quiet, "quiet", false, "no summary, progress or warnings")
 	return cmd
 }
 
 func mix(cmd *cobra.Command, path string, f mixFlags) error {
 	started := time.Now()
-	if err := f.check(); err != nil {
+	if err := f.check(cmd); err != nil {
 		return err
 	}
 	c, err := read(cmd, path, f.quiet)
@@ -68,10 +56,8 @@ func mix(cmd *cobra.Command, path string, f mixFlags) error {
 	if err != nil {
 		return err
 	}
-	opt := solve.Options{Gap: f.gap, StartSpreadH: f.startSpread, WithoutLimits: f.withoutLimits}
-	if f.gap == 0 {
-		opt.Gap = -1
-	}
+	opt := f.options()
+	opt.WithoutLimits = f.withoutLimits
 	p := &report.Progress{CaseHash: c.Hash, Options: opt, Year: solve.NewYear(from, to, !f.noComparison && !f.withoutLimits)}
 	if p, err = openRun(f, p); err != nil {
 		return err
@@ -114,22 +100,6 @@ func mix(cmd *cobra.Command, path string, f mixFlags) error {
 	return nil
 }
 
-func (f mixFlags) check() error {
-	switch {
-	case f.out == "":
-		return bad("mix needs --out DIR, the folder to write the run to")
-	case f.workers < 1:
-		return bad("--workers is %d, want at least 1", f.workers)
-	case !(f.gap >= 0 && f.gap < 1):
-		return bad("--gap is %g, want at least 0 and less than 1 (0.001 is 0.1 %%)", f.gap)
-	case !(f.startSpread >= 0) || math.IsInf(f.startSpread, 0):
-		return bad("--start-spread is %g, want 0 or more hours", f.startSpread)
-	case f.replace && f.resume:
-		return bad("--replace and --resume exclude each other")
-	}
-	return nil
-}
-
 // hourRange reads A:B; either side may be left out.
 func hourRange(text string, hours int) (from, to int, err error) {
 	if text == "" {
@@ -152,24 +122,9 @@ func hourRange(text string, hours int) (from, to int, err error) {
 
 // openRun decides what --out may be used for: a new run, one to replace or one to resume.
 func openRun(f mixFlags, fresh *report.Progress) (*report.Progress, error) {
-	held, err := report.Holds(f.out)
-	if err != nil {
-		return nil, err
-	}
-	switch {
-	case held == report.NoFolder || f.replace:
-		if f.resume {
-			return nil, bad("--resume: %s holds no interrupted run", f.out)
-		}
-		return fresh, report.DropProgress(f.out)
-	case held == report.FinishedRun:
-		return nil, bad("%s holds a finished run; --replace overwrites it", f.out)
-	case held == report.InterruptedRun && !f.resume:
-		return nil, bad("%s holds an interrupted run; --resume goes on with it, --replace starts anew", f.out)
-	case held == report.NoRun && f.resume:
-		return nil, bad("--resume: %s holds no interrupted run", f.out)
-	case held == report.NoRun:
-		return fresh, nil
+	going, err := f.goesOn("run")
+	if err != nil || !going {
+		return fresh, err
 	}
 	p, err := report.LoadProgress(f.out)
 	if err != nil {

@@ -37,13 +37,9 @@ func sizeCommand() *cobra.Command {
 		Args: caseFile,
 		RunE: func(cmd *cobra.Command, args []string) error { return sizeUp(cmd, args[0], &f) },
 	}
-	f.add(cmd)
-	fl := cmd.Flags()
 	const gap = 0.0002
-	f.gap = gap
-	if g := fl.Lookup("gap"); g != nil {
-		g.DefValue = fmt.Sprint(gap)
-	}
+	f.add(cmd, gap)
+	fl := cmd.Flags()
 	fl.StringVar(&f.project, "project", "", "YAML file of what may be built")
 	fl.StringVar(&f.mw, "mw", "", "sizes to try: `A:B:N`, N sizes from A to B, or a list A,B,...; default: up to what covers the largest loss")
 	fl.StringVar(&f.energy, "energy", "", "`LIST` of energies to try: MWh, or 1x for what the response of all MW needs (default 0.5x,1x,2x)")
@@ -54,7 +50,7 @@ func sizeCommand() *cobra.Command {
 
 func sizeUp(cmd *cobra.Command, path string, f *sizeFlags) error {
 	started := time.Now()
-	if err := f.check("size"); err != nil {
+	if err := f.check(cmd); err != nil {
 		return err
 	}
 	rule, ok := map[string]size.Rule{"marginal": size.Marginal, "hull": size.Hull}[f.pay]

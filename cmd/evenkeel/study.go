@@ -4,9 +4,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
-	"math"
 	"os"
-	"runtime"
 	"time"
 
 	"github.com/schollz/progressbar/v3"
@@ -15,59 +13,27 @@ import (
 
 	"evenkeel/fleet"
 	"evenkeel/report"
-	"evenkeel/solve"
 	"evenkeel/study/work"
 )
 
 // studyFlags are the flags that every study over the hours of a case has.
 type studyFlags struct {
-	out, hours       string
-	every            int
-	workers          int
-	gap, startSpread float64
-	replace, resume  bool
-	quiet            bool
+	runFlags
+	every int
 }
 
-func (f *studyFlags) add(cmd *cobra.Command) {
-	fl := cmd.Flags()
-	fl.StringVar(&f.out, "out", "", "folder to write the study to")
-	fl.StringVar(&f.hours, "hours", "", "only hours A to B-1, counted from 0, as `A:B`")
-	fl.IntVar(&f.every, "every", 1, "only every `N`th of the hours: a sample, counted up to a year")
-	fl.IntVar(&f.workers, "workers", runtime.NumCPU(), "hours worked on at the same time; results do not depend on it")
-	fl.Float64Var(&f.gap, "gap", solve.DefaultGap, "relative gap between cost and proven bound; 0 solves to optimality")
-	fl.Float64Var(&f.startSpread, "start-spread", 0, "spread start costs over this many `hours` of running; 0 leaves them out")
-	fl.BoolVar(&f.replace, "replace", false, "replace what --out already holds")
-	fl.BoolVar(&f.resume, "resume", false, "go on with the interrupted study that --out holds")
-	fl.BoolVar(&f.quiet, "quiet", false, "no summary, progress or warnings")
+// add adds them, with the study's usual gap.
+func (f *studyFlags) add(cmd *cobra.Command, gap float64) {
+	f.runFlags.add(cmd, "study", gap)
+	cmd.Flags().IntVar(&f.every, "every", 1, "only every `N`th of the hours: a sample, counted up to a year")
 }
 
-// check judges the common flags of a study called name.
-func (f *studyFlags) check(name string) error {
-	switch {
-	case f.out == "":
-		return bad("%s needs --out DIR, the folder to write the study to", name)
-	case f.workers < 1:
-		return bad("--workers is %d, want at least 1", f.workers)
-	case f.every < 1:
+// check judges them.
+func (f *studyFlags) check(cmd *cobra.Command) error {
+	if f.every < 1 {
 		return bad("--every is %d, want at least 1", f.every)
-	case !(f.gap >= 0 && f.gap < 1):
-		return bad("--gap is %g, want at least 0 and less than 1 (0.001 is 0.1 %%)", f.gap)
-	case !(f.startSpread >= 0) || math.IsInf(f.startSpread, 0):
-		return bad("--start-spread is %g, want 0 or more hours", f.startSpread)
-	case f.replace && f.resume:
-		return bad("--replace and --resume exclude each other")
 	}
-	return nil
-}
-
-// options are the optimiser's.
-func (f *studyFlags) options() solve.Options {
-	opt := solve.Options{Gap: f.gap, StartSpreadH: f.startSpread}
-	if f.gap == 0 {
-		opt.Gap = -1
-	}
-	return opt
+	return f.runFlags.check(cmd)
 }
 
 // list gives the hours of the case that a study looks at.
@@ -86,34 +52,17 @@ func (f *studyFlags) list(c *fleet.Case) ([]int, error) {
 // open makes the folder of a study, or goes on with an interrupted one: items then holds what was
 // done. asked says in words what has a say in the results.
 func (f *studyFlags) open(asked string, items any) error {
-	held, err := report.Holds(f.out)
-	if err != nil {
-		return err
-	}
-	going := false
+	going, err := f.goesOn("study")
 	switch {
-	case held == report.NoFolder || held == report.NoRun || f.replace:
-		if f.resume {
-			return bad("--resume: %s holds no interrupted study", f.out)
-		}
-		err = report.DropProgress(f.out)
-	case held == report.FinishedRun:
-		return bad("%s holds a finished run or study; --replace overwrites it", f.out)
-	case !f.resume:
-		return bad("%s holds an interrupted run or study; --resume goes on with it, --replace starts anew", f.out)
-	default:
-		going = true
-	}
-	if err != nil {
+	case err != nil:
 		return err
+	case !going:
+		return os.MkdirAll(f.out, 0o777)
 	}
-	if going {
-		if err := report.ReadStudy(f.out, asked, items); err != nil {
-			return exit{exitBadInput, err}
-		}
-		return nil
+	if err := report.ReadStudy(f.out, asked, items); err != nil {
+		return exit{exitBadInput, err}
 	}
-	return os.MkdirAll(f.out, 0o777)
+	return nil
 }
 
 // runStudy does the items of a study that are not done yet. Where it is interrupted it keeps what

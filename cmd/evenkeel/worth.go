@@ -42,10 +42,8 @@ func worthCommand() *cobra.Command {
 		Args: caseFile,
 		RunE: func(cmd *cobra.Command, args []string) error { return runWorth(cmd, args[0], f) },
 	}
-	f.add(cmd)
+	f.add(cmd, worthGap)
 	fl := cmd.Flags()
-	fl.Lookup("gap").DefValue = fmt.Sprint(worthGap)
-	_ = fl.Set("gap", fmt.Sprint(worthGap))
 	fl.StringVar(&f.product, "product", "", "product `FILE`")
 	fl.StringVar(&f.volumes, "volumes", "", "MW of the product there may be, N from A to B, as `A:B:N`; A is 0 (default 11 up to its cap)")
 	fl.Float64SliceVar(&f.activations, "activation", nil, "look at another activation time too, at the last volume, `seconds`; can be repeated")
@@ -65,7 +63,7 @@ const worthGap = 0.0002
 
 func runWorth(cmd *cobra.Command, path string, f worthFlags) error {
 	started := time.Now()
-	if err := f.check("worth"); err != nil {
+	if err := f.check(cmd); err != nil {
 		return err
 	}
 	c, err := read(cmd, path, f.quiet)
