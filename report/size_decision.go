@@ -152,7 +152,7 @@ func nextWords(s *size.Study, pace *size.Pace, side size.Side) string {
 	if words := stopSize(s, pace, side); words == unitsOf(s.Plan.Project, r.MW) {
 		return "Not all sizes next to it were tried"
 	}
-	return fmt.Sprintf("Of the sizes between those tried %s may be better (interpolated)", stopSize(s, pace, side))
+	return fmt.Sprintf("By interpolation between the sizes tried the best is %s", stopSize(s, pace, side))
 }
 
 // around tells whether one machine less (or none) and one more were tried.
@@ -182,8 +182,9 @@ func closer(s *size.Study, pace *size.Pace, side size.Side) string {
 		return ""
 	case condenser:
 		every := units((above - below) / (steps + 2))
-		n := math.Ceil((above-below)/every-1e-9) - 1
-		return ": " + sweep(below+every, below+n*every, int(n)) + " looks closer"
+		from := math.Max(below, every)
+		n := math.Ceil((above-from)/every - 1e-9)
+		return ": " + sweep(from, from+n*every, int(n)+1) + " looks closer"
 	case above-below <= near*r.MW:
 		return ""
 	case below == 0:

@@ -35,8 +35,8 @@ func TestSizesBetweenThoseTried(t *testing.T) {
 		want, next string
 	}{
 		{condenser, []float64{40, 80}, []float64{5, 4}, size.Stop{MW: 45}, "1 unit of 40 MVA", "One unit more nets 1.00 EUR a year less"},
-		{condenser, []float64{40, 80, 160}, []float64{3, 5, 4}, size.Stop{MW: 100}, "2 or 3 units of 40 MVA", "2 or 3 units of 40 MVA may be better (interpolated): --mw 80:120:2 looks closer"},
-		{condenser, []float64{40, 80, 160}, []float64{3, 5, 1}, size.Stop{MW: 75}, "2 units of 40 MVA", "Not all sizes next to it were tried: --mw 80:120:2 looks closer"},
+		{condenser, []float64{40, 80, 160}, []float64{3, 5, 4}, size.Stop{MW: 100}, "2 or 3 units of 40 MVA", "the best is 2 or 3 units of 40 MVA: --mw 40:160:4 looks closer"},
+		{condenser, []float64{40, 80, 160}, []float64{3, 5, 1}, size.Stop{MW: 75}, "2 units of 40 MVA", "Not all sizes next to it were tried: --mw 40:160:4 looks closer"},
 		{condenser, []float64{40, 80}, []float64{3, 5}, size.Stop{MW: 80, Beyond: true}, "beyond the 2 units of 40 MVA tried", "the largest size tried, and up to it more has paid: --mw 80:320:7 looks further"},
 		{battery, []float64{3, 6, 9}, []float64{3, 5, 4}, size.Stop{MW: 7.02}, "about 7 MW", "stops paying at about 7 MW (interpolated): --mw 3:9:7 looks closer"},
 		{battery, []float64{3, 6, 9}, []float64{5, 4, 3}, size.Stop{MW: 4}, "about 4 MW", "--mw 0.75:6:8 looks closer"},
