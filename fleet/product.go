@@ -80,16 +80,17 @@ func (r *reader) product(s *section, p *Product, c *Case) {
 	p.DelayS = s.numberOr("delay_s", span, 0)
 	p.HoldS = s.numberOr("hold_s", span, 0)
 	p.WithdrawS = s.numberOr("withdraw_s", span, 0)
-	p.LevelHz = s.numberOr("level_hz", positive, 0)
+	s.usualActivation(p.ActivationS)
+	p.LevelHz = s.levelHz(c.Limits)
 	if p.DelayS > p.ActivationS {
 		s.fault("delay_s", num(p.DelayS), "at most activation_s ("+num(p.ActivationS)+"), of which it is a part")
-	}
-	if p.LevelHz > c.Limits.SteadyHz {
-		s.fault("level_hz", num(p.LevelHz), "at most frequency.steady.max_deviation_hz of the case ("+num(c.Limits.SteadyHz)+"), to which responses are qualified")
 	}
 	p.CapMW = s.value("cap_mw", notBelow0).Value
 	if p.CapMW.most() == 0 {
 		s.fault("cap_mw", "0 in every hour", "more than 0 in some hour")
+	}
+	if peak := c.Load.DemandMW.most(); p.CapMW.most() > peak {
+		s.warn("cap_mw", num(p.CapMW.most()), "at most the highest demand of the case ("+num(peak)+" MW): no loss is larger (common practice)")
 	}
 	r.productSteps(s, p)
 	if len(r.found.Errors()) > 0 {

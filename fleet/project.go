@@ -110,7 +110,7 @@ const mostHoldS = 86_400
 func ReadProject(path string, c *Case) (*Project, Findings) { return readProject(path, c, openFile) }
 
 func readProject(path string, c *Case, open opener) (*Project, Findings) {
-	r := &reader{path: path, dir: filepath.Dir(path), open: open, what: "project", c: c}
+	r := &reader{path: path, dir: filepath.Dir(path), open: open, what: "project", c: c, elsewhere: keysElsewhere}
 	raw, err := open(path, maxCaseBytes)
 	if err != nil {
 		r.fault(0, "", err.Error(), "a project file that can be read")
@@ -142,6 +142,7 @@ func (r *reader) project(s *section, p *Project) {
 		p.Money.FixedPerMWYear = m.numberOr("fixed_per_mw_year", notBelow0, 0)
 		p.Money.LifetimeYears = m.number("lifetime_years", rule{lo: 0, hi: 200, above: true})
 		p.Money.DiscountPct = m.number("discount_pct", rule{lo: 0, hi: 100})
+		defer func() { m.unusualMoney(p) }() // once the kind is known
 	}
 	var names []string
 	found := false
@@ -228,6 +229,7 @@ func (r *reader) projectTimes(s *section, p *Project) {
 	q := rule{lo: 0, hi: maxSeconds}
 	p.DelayS = s.numberOr("delay_s", q, 0)
 	p.ActivationS = s.number("activation_s", rule{lo: 0, hi: maxSeconds, above: true})
+	s.usualActivation(p.ActivationS)
 	p.HoldS = s.number("hold_s", rule{lo: 0, hi: mostHoldS, above: true})
 	p.WithdrawS = s.numberOr("withdraw_s", q, 0)
 	p.PricePerMW = s.numberOr("price_per_mw", notBelow0, 0)
@@ -251,8 +253,11 @@ func (r *reader) store(s *section, p *Project) {
 	} else {
 		r.projectTimes(s, p)
 	}
-	p.LevelHz = s.numberOr("level_hz", rule{lo: 0, hi: r.c.Limits.SteadyHz, above: true}, 0)
+	p.LevelHz = s.levelHz(r.c.Limits)
 	p.DroopPct = s.numberOr("droop_pct", rule{lo: 0, hi: 100, above: true}, 0)
+	if s.has("droop_pct") {
+		s.usual("droop_pct", p.DroopPct, 0.1, 12, "0.1 to 12, in per cent (common practice)")
+	}
 	p.DeadbandHz = s.numberOr("deadband_hz", rule{lo: 0, hi: r.c.Limits.SteadyHz}, 0)
 	switch {
 	case s.has("deadband_hz") && !s.has("droop_pct"):
@@ -270,6 +275,7 @@ func (r *reader) store(s *section, p *Project) {
 		}
 	}
 	p.EfficiencyPct = s.numberOr("efficiency_pct", rule{lo: 1, hi: 100}, 85)
+	s.usual("efficiency_pct", p.EfficiencyPct, 50, 100, "70 to 95 there and back, in per cent (common practice)")
 	p.Events = s.whole("events_before_recharge", rule{lo: 1, hi: 100, integer: true}, 1)
 	p.RechargeShare = s.numberOr("recharge_mw_share", rule{lo: 0, hi: 1, above: true}, 0.25)
 	p.ReadyAgainS = s.numberOr("ready_again_s", rule{lo: 0, hi: mostHoldS, above: true}, 900)
@@ -325,6 +331,12 @@ func (r *reader) tryShape(s *section, p *Project) {
 	if _, _, err := p.response(r.c, p.ActivationS); err != nil {
 		r.fault(s.line, "activation_s", "times that make no response", err.Error())
 	}
+}
+
+// Promised tells whether the project's response comes in whole by its times after any loss,
+// whatever frequency does: no level sets it off, and it follows neither a droop nor a model.
+func (p *Project) Promised() bool {
+	return p.Kind != CondenserProject && p.Model < 0 && p.LevelHz == 0 && p.DroopPct == 0
 }
 
 // Paced tells whether the project's activation time can be varied.

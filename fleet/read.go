@@ -54,7 +54,8 @@ type reader struct {
 	what      string // the file holds: case or product
 	open      opener
 	found     Findings
-	nodes     int // visited so far
+	elsewhere map[string]string // keys that belong in a section: where
+	nodes     int               // visited so far
 	spent     bool
 
 	tables     map[string]*table

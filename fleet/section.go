@@ -102,7 +102,11 @@ func (r *reader) section(node *yaml.Node, path string, line int, known []string)
 		}
 		s.entries[k.Value] = entry{line: k.Line, node: v}
 		if !contains(known, k.Value) {
-			r.fault(k.Line, s.key(k.Value), "an unknown key", suggest(k.Value, known))
+			want := suggest(k.Value, known)
+			if place, ok := r.elsewhere[k.Value]; ok && path == "" {
+				want = place
+			}
+			r.fault(k.Line, s.key(k.Value), "an unknown key", want)
 		}
 	}
 	for _, m := range merges {

@@ -145,7 +145,11 @@ func netFigure(s *size.Study) figure {
 	if hi > 0 {
 		lo = math.Max(lo, -1.5*hi) // far below nothing there is nothing to be seen
 	}
-	taker = below(taker, hi)
+	taker, cut := below(taker, hi)
+	takerName := "owner, were prices those without it"
+	if cut {
+		takerName += " (cut: it rises beyond the axis)"
+	}
 	hi += 0.12 * (hi - lo) // room for the names of the marks
 	by, label := perYear(math.Max(hi, -lo), s.Plan.Case.Currency)
 	scale := func(points [][2]float64) [][2]float64 {
@@ -172,15 +176,15 @@ func netFigure(s *size.Study) figure {
 	row := 0
 	for side := range size.Sides {
 		if stop := pace.Stop[side]; stop.MW > 0 && !stop.Beyond {
-			p.Add(mark{x: stop.MW, name: fmt.Sprintf("%s: about %s %s", sideNames[side], round(stop.MW), unit), color: sideColors[side], row: row, left: stop.MW > 0.7*p.X.Max})
+			p.Add(mark{x: markAt(s, pace, side), name: sideNames[side] + ": " + stopSize(s, pace, side), color: sideColors[side], row: row, left: stop.MW > 0.7*p.X.Max})
 			row++
 		}
 	}
 	key := []entry{
 		{name: "owner, paid at prices with itself in the market", line: ptr(sideLine(size.Owner))},
 		{name: "system: what it saves (pale: within the gaps)", line: ptr(sideLine(size.System))},
-		{name: "owner, were prices those without it", line: &takerLine},
-		{name: "where the next " + unit + " stops paying", line: &draw.LineStyle{Color: faded, Width: vg.Points(1), Dashes: []vg.Length{vg.Points(2), vg.Points(2)}}},
+		{name: takerName, line: &takerLine},
+		{name: "where the next " + step(s.Plan.Project) + " stops paying", line: &draw.LineStyle{Color: faded, Width: vg.Points(1), Dashes: []vg.Length{vg.Points(2), vg.Points(2)}}},
 	}
 	about := "energy as is best for each; owner paid at " + s.Rule.Words() + "; " + conditions(s)
 	if !s.Plan.Project.Kind.Stores() {
@@ -192,14 +196,14 @@ func netFigure(s *size.Study) figure {
 	return drawn(p, sizeTitle(s, "Net value a year by size"), about, key)
 }
 
-// below cuts a line where it first passes most.
-func below(points [][2]float64, most float64) [][2]float64 {
+// below cuts a line where it first passes most, and tells whether it does.
+func below(points [][2]float64, most float64) (line [][2]float64, cut bool) {
 	for i := 1; i < len(points); i++ {
 		if a, b := points[i-1], points[i]; b[1] > most && b[1] > a[1] {
-			return append(points[:i:i], [2]float64{a[0] + (b[0]-a[0])*(most-a[1])/(b[1]-a[1]), most})
+			return append(points[:i:i], [2]float64{a[0] + (b[0]-a[0])*(most-a[1])/(b[1]-a[1]), most}), true
 		}
 	}
-	return points
+	return points, false
 }
 
 // drawn is a figure of one plot with its key above.
@@ -245,11 +249,10 @@ func energyFigure(s *size.Study) (figure, bool) {
 	for side := range size.Sides {
 		var line, solved [][2]float64
 		for _, e := range curve {
-			line = append(line, [2]float64{e.MWh, e.Net[side] / by})
-		}
-		for i := range s.Results {
-			if o := &s.Results[i]; o.MW == r.MW && o.ActivationS == r.ActivationS {
-				solved = append(solved, [2]float64{o.EnergyMWh, o.Net[side] / by})
+			q := [2]float64{e.MWh, e.Net[side] / by}
+			line = append(line, q)
+			if e.Solved {
+				solved = append(solved, q)
 			}
 		}
 		p.Add(path{line, sideLine(side)}, spots{solved, sideColors[side]})
@@ -257,7 +260,7 @@ func energyFigure(s *size.Study) (figure, bool) {
 	need := r.MW * r.NeedMWhPerMW
 	p.Add(mark{x: need, name: fmt.Sprintf("%s MWh carry the response of all %s MW", round(need), plain(r.MW)), color: ink, left: need > 0.6*p.X.Max})
 	key := []entry{{name: "owner", line: ptr(sideLine(size.Owner))}, {name: "system", line: ptr(sideLine(size.System))}}
-	below := fmt.Sprintf("%s MW, out within %s s; dots: designs tried; %s", plain(r.MW), plain(r.ActivationS), conditions(s))
+	below := fmt.Sprintf("%s MW, out within %s s; dots: solved, with as much held; %s", plain(r.MW), plain(r.ActivationS), conditions(s))
 	return drawn(p, sizeTitle(s, "Net value a year by energy"), below, key), true
 }
 

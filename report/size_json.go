@@ -14,6 +14,7 @@ type sizeSummary struct {
 	ProjectNote  string   `json:"project_note,omitempty"`
 	ProjectHash  string   `json:"project_hash"`
 	Kind         string   `json:"kind"`
+	Promised     bool     `json:"response_is_a_promise"`
 	Currency     string   `json:"currency"`
 	SizeUnit     string   `json:"size_unit"`
 	HoursLooked  int      `json:"hours_looked_at"`
@@ -116,7 +117,7 @@ func sizeJSON(w io.Writer, s *Sized) error {
 	plan, project := s.Plan, s.Plan.Project
 	out := sizeSummary{
 		Caution: Caution, Case: plan.Case.Name, CaseHash: plan.Case.Hash, Project: project.Name, ProjectNote: project.Note, ProjectHash: project.Hash,
-		Kind: project.Kind.String(), Currency: plan.Case.Currency, SizeUnit: project.Kind.SizeUnit(),
+		Kind: project.Kind.String(), Promised: project.Promised(), Currency: plan.Case.Currency, SizeUnit: project.Kind.SizeUnit(),
 		HoursLooked: len(s.Hours), HoursOfCase: plan.Case.Hours(), FirstHour: s.Hours[0], LastHour: s.Hours[len(s.Hours)-1], HoursAYear: size.YearH,
 		AskedGap: number{s.Gap, decShare}, StartSpreadH: number{s.StartSpreadH, decS}, Pay: s.Rule.String(), Designs: len(plan.Points), Cases: plan.Cases(),
 		CostBare: money(s.Years[0][0].Cost), ShortBare: number{s.Years[0][0].ShortH, 1},
@@ -131,7 +132,7 @@ func sizeJSON(w io.Writer, s *Sized) error {
 			ActivationS: number{p.ActivationS, decS},
 			EnergyPerMW: energyJSON{number{e.TotalMWh, decShare}, number{e.EventsMWh, decShare}, number{e.RechargeMWh, decShare}, number{e.DownMWh, decShare}, number{e.HoldS, decS}},
 			StopOwner:   stopOf(p.Stop[size.Owner]), StopSystem: stopOf(p.Stop[size.System]),
-			NetOwner: money(bestNet(s.Study, p, size.Owner)), NetSystem: money(bestNet(s.Study, p, size.System)),
+			NetOwner: money(peak(s.Study, p, size.Owner).Net[size.Owner]), NetSystem: money(peak(s.Study, p, size.System).Net[size.System]),
 		})
 	}
 	swings := s.Sensitivity(&s.Results[s.Best[size.Owner]])

@@ -31,6 +31,9 @@ func conditions(s *size.Study) string {
 // designWords name a design.
 func designWords(s *size.Study, r *size.Result) string {
 	p := s.Plan.Project
+	if p.Kind == fleet.CondenserProject {
+		return unitsOf(p, r.MW)
+	}
 	text := plain(r.MW) + " " + p.Kind.SizeUnit()
 	if p.Kind.Stores() {
 		text += " / " + round(r.EnergyMWh) + " MWh"
@@ -70,8 +73,11 @@ func sizeLooked(p *page, s *size.Study, gap float64) {
 	first, last := c.Times[s.Hours[0]], c.Times[s.Hours[len(s.Hours)-1]]
 	p.line("%s, %s to %s UTC", conditions(s), minute(first), minute(last))
 	best := &s.Results[s.Best[size.System]]
-	p.text(fmt.Sprintf("%s in %s (who holds the same is one); gap %s %%. Given the gaps, the saving at %s lies between %s and %s %s a year.", plural(len(s.Plan.Points), "design"), plural(s.Plan.Cases(), "case"),
-		plain(100*gap), designWords(s, best), amount(best.Year.SavingAtLeast), amount(best.Year.SavingAtMost), c.Currency), "")
+	p.text(fmt.Sprintf("%s; gap %s %%. Given the gaps, the saving at %s lies between %s and %s %s a year.", casesWords(s.Plan), plain(100*gap), designWords(s, best), wholeMoney(best.Year.SavingAtLeast), wholeMoney(best.Year.SavingAtMost), c.Currency), "")
+	if s.Plan.Project.Promised() {
+		p.text("PROMISE: with times alone the project comes in whole after any loss, whatever frequency does. That is taken at its word: no model of it is proven in "+
+			"closed loop, and it is worth more than what has to wait for a level or follows frequency."+promiseKeys(s.Plan.Project), "")
+	}
 	short := 0.0
 	for i := range s.Results {
 		short = max(short, s.Results[i].Year.ShortH)
@@ -88,8 +94,47 @@ func plural(n int, what string) string {
 	return count(n) + " " + what + "s"
 }
 
-// thousands prints money in thousands.
-func thousands(v float64) string { return grouped(v/1000, 0) }
+// casesWords say how many designs there are, and in how many cases they are solved.
+func casesWords(plan *size.Plan) string {
+	bare := len(plan.Ladders)
+	built := plan.Cases() - bare
+	text := plural(len(plan.Points), "design")
+	if built < len(plan.Points) {
+		text += ", solved in " + plural(built, "case") + " (designs that hold the same share one)"
+	} else {
+		text += ", each solved in a case of its own"
+	}
+	if bare > 1 {
+		return text + ", and the case with nothing built for each activation time"
+	}
+	return text + ", and the case with nothing built"
+}
+
+// promiseKeys name what would make a model of a promise, where the file has keys for it.
+func promiseKeys(p *fleet.Project) string {
+	if !p.Kind.Stores() {
+		return ""
+	}
+	return " Give level_hz, droop_pct or model for that."
+}
+
+// wholeMoney prints money a year without cents, where it is not small.
+func wholeMoney(v float64) string {
+	if math.Abs(v) < 100 {
+		return grouped(v, 2)
+	}
+	return grouped(v, 0)
+}
+
+// tableMoney is the unit of a table of money: by how much to divide, and its name. Thousands
+// would print small figures as 0.
+func tableMoney(most float64, currency string) (by float64, name string) {
+	const least = 20_000
+	if most < least {
+		return 1, currency
+	}
+	return 1000, "thousand " + currency
+}
 
 func sizeTable(p *page, s *size.Study) {
 	pace := bestPace(s)
@@ -101,7 +146,16 @@ func sizeTable(p *page, s *size.Study) {
 	if s.Plan.Project.Kind != fleet.CondenserProject && pace.ActivationS > 0 {
 		title += ", out within " + plain(pace.ActivationS) + " s"
 	}
-	p.section(title + fmt.Sprintf(" (thousand %s a year)", s.Plan.Case.Currency))
+	most := 0.0
+	for _, k := range pace.Full {
+		r := &s.Results[k]
+		for _, v := range []float64{r.Cost, r.Value[size.System], r.Net[size.System], r.Value[size.Owner], r.Net[size.Owner], r.TakerNet} {
+			most = max(most, math.Abs(v))
+		}
+	}
+	by, name := tableMoney(most, s.Plan.Case.Currency)
+	money := func(v float64) string { return grouped(v/by, 0) }
+	p.section(title + fmt.Sprintf(" (%s a year)", name))
 	mwh := ""
 	if s.Plan.Project.Kind.Stores() {
 		mwh = "MWh"
@@ -113,16 +167,15 @@ func sizeTable(p *page, s *size.Study) {
 		if mwh != "" {
 			mwh = round(r.EnergyMWh)
 		}
-		p.line("%s%s%s%s%s%s%s%s", padLeft(plain(r.MW), 9), padLeft(mwh, 9), padLeft(thousands(r.Cost), 9), padLeft(thousands(r.Value[size.System]), 10), padLeft(thousands(r.Net[size.System]), 10),
-			padLeft(thousands(r.Value[size.Owner]), 10), padLeft(thousands(r.Net[size.Owner]), 10), padLeft(thousands(r.TakerNet), 11))
+		p.line("%s%s%s%s%s%s%s%s", padLeft(plain(r.MW), 9), padLeft(mwh, 9), padLeft(money(r.Cost), 9), padLeft(money(r.Value[size.System]), 10), padLeft(money(r.Net[size.System]), 10),
+			padLeft(money(r.Value[size.Owner]), 10), padLeft(money(r.Net[size.Owner]), 10), padLeft(money(r.TakerNet), 11))
 	}
 	p.text("saves: the system's cost without it less that with it, its own cost of holding counted in. earns: what it holds at the hour's prices with itself in the "+
 		"market, less its own cost. as taker: net, were prices those without it.", "  ")
 }
 
 func sizeStops(p *page, s *size.Study) {
-	unit := s.Plan.Project.Kind.SizeUnit()
-	p.section("Where the next " + unit + " stops paying")
+	p.section("Where the next " + step(s.Plan.Project) + " stops paying")
 	for i := range s.Paces {
 		pace := &s.Paces[i]
 		name := "  any"
@@ -133,29 +186,10 @@ func sizeStops(p *page, s *size.Study) {
 		}
 		var words []string
 		for side := range size.Sides {
-			words = append(words, fmt.Sprintf("%s %s (net %s at best)", sideNames[side], stopWords(pace.Stop[side], unit), amount(math.Round(bestNet(s, pace, side)))))
+			words = append(words, fmt.Sprintf("%s %s (net %s at best)", sideNames[side], stopWords(s, pace, side), wholeMoney(peak(s, pace, side).Net[side])))
 		}
 		p.fact(name, strings.Join(words, "; "))
 	}
-}
-
-// bestNet is the most that a side can net at a pace.
-func bestNet(s *size.Study, pace *size.Pace, side size.Side) float64 {
-	best := math.Inf(-1)
-	for _, k := range pace.Curve[side] {
-		best = max(best, s.Results[k].Net[side])
-	}
-	return best
-}
-
-func stopWords(stop size.Stop, unit string) string {
-	switch {
-	case stop.Beyond:
-		return "beyond the " + plain(stop.MW) + " " + unit + " tried"
-	case stop.MW == 0:
-		return "none pays"
-	}
-	return "about " + round(stop.MW) + " " + unit
 }
 
 // perMW prints MWh for a MW: a flywheel has few.
@@ -208,7 +242,7 @@ func sizeUse(p *page, s *size.Study) {
 		v    float64
 	}{{"response", paid.Response}, {"response downwards", paid.Down}, {"inertia", paid.Inertia}, {"energy drawn", paid.Energy}, {"own cost", -paid.Own}} {
 		if part.v != 0 {
-			parts = append(parts, part.name+" "+amount(math.Round(part.v)))
+			parts = append(parts, part.name+" "+wholeMoney(part.v))
 		}
 	}
 	if len(parts) == 0 {
@@ -223,7 +257,7 @@ func sizeUse(p *page, s *size.Study) {
 	if effect < 0 {
 		effect, takes = -effect, "adds %s %% to that"
 	}
-	p.fact("  as price taker", fmt.Sprintf("%s a year: its own effect on prices "+takes, amount(math.Round(y.Taker[s.Rule])), fixed(effect, 0)))
+	p.fact("  as price taker", fmt.Sprintf("%s a year: its own effect on prices "+takes, wholeMoney(y.Taker[s.Rule]), fixed(effect, 0)))
 }
 
 // sizeWhen says when half of the income falls.
@@ -255,67 +289,7 @@ func sizeSwings(p *page, s *size.Study) {
 	p.section(fmt.Sprintf("What matters most (each by ±%.0f %%; the owner's net of %s)", 100*size.SwingShare, designWords(s, r)))
 	for i := range swings[:min(swingsListed, len(swings))] {
 		w := &swings[i]
-		p.line("  %s %s to %s   at %s to %s %s", padRight(w.Input, 25), padLeft(amount(math.Round(w.NetLow[size.Owner])), 11), padLeft(amount(math.Round(w.NetHigh[size.Owner])), 11),
+		p.line("  %s %s to %s   at %s to %s %s", padRight(w.Input, 25), padLeft(wholeMoney(w.NetLow[size.Owner]), 11), padLeft(wholeMoney(w.NetHigh[size.Owner]), 11),
 			grouped(w.Low, decimals(w.Low)), grouped(w.High, decimals(w.High)), strings.TrimSuffix(w.Unit, " a year"))
 	}
-}
-
-func sizeDecision(p *page, s, other *size.Study) {
-	project := s.Plan.Project
-	unit := project.Kind.SizeUnit()
-	r, sys := &s.Results[s.Best[size.Owner]], &s.Results[s.Best[size.System]]
-	pace := s.Pace(r)
-	p.section("Decision")
-	money := func(v float64) string { return amount(math.Round(v)) + " " + s.Plan.Case.Currency }
-	if !s.Pays(size.Owner) {
-		when := "it would pay at no capital cost"
-		if b := r.BreakEven[size.Owner]; b > 0 {
-			when = fmt.Sprintf("it would pay with a capital cost of %s per %s (asked: %s)", money(b), unit, money(project.Money.CapitalPerMW))
-		}
-		p.text(fmt.Sprintf("Do not build on these prices: no size tried pays its owner. The least bad, %s, nets %s a year; %s.", designWords(s, r), money(r.Net[size.Owner]), when), "  ")
-	} else {
-		what := "Build " + stopSize(pace.Stop[size.Owner], r, unit)
-		if project.Kind.Stores() {
-			what += " / " + round(stopMW(pace.Stop[size.Owner], r)*r.HoursOfEnergy) + " MWh"
-		}
-		if pace.Stop[size.Owner].Beyond {
-			what += " or more"
-		}
-		if project.Kind != fleet.CondenserProject && r.ActivationS > 0 {
-			what += ", out within " + plain(r.ActivationS) + " s"
-		}
-		p.text(fmt.Sprintf("%s: at %s, the nearest design tried, the owner nets %s a year on a capital of %s, and breaks even at %s per %s (asked: %s).", what,
-			designWords(s, r), money(r.Net[size.Owner]), money(size.Capital(project.Money, r.Design)), money(r.BreakEven[size.Owner]), unit, money(project.Money.CapitalPerMW)), "  ")
-	}
-	switch {
-	case !s.Pays(size.System):
-		p.text("For the system it does not pay at any size tried.", "  ")
-	case s.Pace(sys).Stop[size.System].Beyond:
-		p.text(fmt.Sprintf("For the system more pays still at the largest size tried: %s nets %s a year.", designWords(s, sys), money(sys.Net[size.System])), "  ")
-	default:
-		p.text(fmt.Sprintf("For the system about %s %s would be best: %s nets it %s a year.", round(s.Pace(sys).Stop[size.System].MW), unit, designWords(s, sys), money(sys.Net[size.System])), "  ")
-	}
-	if first := s.Results[pace.Curve[size.Owner][0]].MW; r.MW == first && r.BreakEven[size.Owner] > 0 && project.Kind != fleet.CondenserProject {
-		p.text(fmt.Sprintf("That is the smallest size tried: --mw %s:%s:8 looks closer.", plain(first/4), plain(2*first)), "  ")
-	}
-	o := &other.Results[other.Best[size.Owner]]
-	if other.Pays(size.Owner) {
-		p.text(fmt.Sprintf("Paid at %s instead, the owner would build %s: %s nets %s a year.", other.Rule.Words(), stopWords(other.Pace(o).Stop[size.Owner], unit), designWords(other, o), money(o.Net[size.Owner])), "  ")
-	} else {
-		p.text(fmt.Sprintf("Paid at %s instead, no size tried would pay the owner.", other.Rule.Words()), "  ")
-	}
-}
-
-func stopMW(stop size.Stop, r *size.Result) float64 {
-	if stop.MW > 0 {
-		return stop.MW
-	}
-	return r.MW
-}
-
-func stopSize(stop size.Stop, r *size.Result, unit string) string {
-	if stop.Beyond {
-		return plain(stop.MW) + " " + unit
-	}
-	return "about " + round(stopMW(stop, r)) + " " + unit
 }

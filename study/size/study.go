@@ -1,7 +1,9 @@
 package size
 
 import (
+	"cmp"
 	"math"
+	"slices"
 
 	"evenkeel/fleet"
 )
@@ -162,8 +164,9 @@ func (s *Study) Pace(r *Result) *Pace {
 
 // EnergyPoint is one amount of energy at the best size.
 type EnergyPoint struct {
-	MWh float64
-	Net [Sides]float64
+	MWh    float64
+	Solved bool // the response that it lets be held was solved, for a design of this or another size
+	Net    [Sides]float64
 }
 
 // EnergyCurve is what more or less energy is worth at the size and pace of a result: its value
@@ -176,22 +179,32 @@ func (s *Study) EnergyCurve(r *Result) []EnergyPoint {
 	}
 	years := s.Years[r.Ladder]
 	most := r.MW * r.NeedMWhPerMW
+	var out []EnergyPoint
 	for i := range s.Results {
 		if o := &s.Results[i]; o.MW == r.MW && o.ActivationS == r.ActivationS {
 			most = max(most, o.EnergyMWh)
+			out = append(out, EnergyPoint{MWh: o.EnergyMWh, Solved: true})
+		}
+	}
+	for k := range years {
+		if hold := years[k].HoldMW; hold > 0 && hold <= r.MW {
+			out = append(out, EnergyPoint{MWh: hold * r.NeedMWhPerMW, Solved: true})
 		}
 	}
 	const steps = 200
-	var out []EnergyPoint
 	for i := range steps + 1 {
+		out = append(out, EnergyPoint{MWh: most * float64(i) / steps})
+	}
+	slices.SortStableFunc(out, func(a, b EnergyPoint) int { return cmp.Compare(a.MWh, b.MWh) }) // what was solved first
+	out = slices.CompactFunc(out, func(a, b EnergyPoint) bool { return a.MWh == b.MWh })
+	for i := range out {
+		e := &out[i]
 		d := r.Design
-		d.EnergyMWh = most * float64(i) / steps
-		e := EnergyPoint{MWh: d.EnergyMWh}
+		d.EnergyMWh = e.MWh
 		hold := min(d.MW, d.EnergyMWh/r.NeedMWhPerMW)
 		for side, v := range s.valueAt(years, hold) {
 			e.Net[side] = v - YearlyCost(p.Money, d)
 		}
-		out = append(out, e)
 	}
 	return out
 }
