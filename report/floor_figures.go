@@ -206,12 +206,28 @@ func floorWhen(r *floor.Result) figure {
 		return w.MeanGapMWs() / most, fixed(w.MeanGapMWs()/1000, 1)
 	})
 	much.X.Label.Text = "hour of the day (UTC)"
-	below := fmt.Sprintf("%s; a dispatch that knows the steady-state limit alone, against its own floor%s", yearWords(y), blankWords(y))
+	below := fmt.Sprintf("%s; a dispatch that knows the steady-state limit alone, against its own floor%s%s", yearWords(y), cellWords(y), blankWords(y))
 	return figure{width: 10 * vg.Inch, height: 7 * vg.Inch, draw: func(canvas draw.Canvas) {
 		area := heading(blank(canvas), "When inertia lacks: "+r.Case.Name, below)
 		half := (area.Max.Y - area.Min.Y) / 2
 		drawStacked(often, draw.Crop(area, 0, 0, half+vg.Points(8), 0), much, draw.Crop(area, 0, 0, 0, -half))
 	}}
+}
+
+// cellWords say how few hours of a sample a cell stands for.
+func cellWords(y *floor.Year) string {
+	hours, cells := 0, 0
+	for m := range y.When {
+		for h := range y.When[m] {
+			if n := y.When[m][h].Hours; n > 0 {
+				hours, cells = hours+n, cells+1
+			}
+		}
+	}
+	if y.Scale == 1 || cells == 0 {
+		return ""
+	}
+	return fmt.Sprintf("; about %s a cell", hoursOf(max(1, int(math.Round(float64(hours)/float64(cells))))))
 }
 
 func blankWords(y *floor.Year) string {
