@@ -69,7 +69,7 @@ func TestFloorText(t *testing.T) {
 		}
 		want := []string{r.Case.Name, "Operating instruction", Caution[:30]}
 		if r.Year != nil {
-			want = append(want, "Hours lacking", "45.7 GW·s", "constrain machines on", "cheapest mix of all", "one number that covers all hours", "up to 20.0 MW", "Not kept")
+			want = append(want, "Hours lacking", "45.7 GW·s", "constrain machines on", "cheapest mix of all", "one number for all hours", "Covers: hours whose own floor", "up to 20.0 MW", "Not kept")
 		}
 		for _, w := range want {
 			if !strings.Contains(out.String(), w) {

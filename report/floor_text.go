@@ -5,7 +5,6 @@ import (
 	"io"
 	"math"
 	"slices"
-	"time"
 
 	"evenkeel/limits"
 	"evenkeel/study/floor"
@@ -17,7 +16,7 @@ func FloorText(w io.Writer, r *floor.Result) error {
 	p.text("How much inertia must be online: "+r.Case.Name, "")
 	if y := r.Year; y != nil {
 		first, last := y.Hours[0], y.Hours[len(y.Hours)-1]
-		p.line("%s, %s to %s UTC", hoursOf(len(y.Hours)), minute(first.Time), minute(last.Time.Add(time.Hour)))
+		p.line("%s, %s to %s UTC", hoursOf(len(y.Hours)), minute(first.Time), minute(last.Time))
 		if y.Scale != 1 {
 			p.text(fmt.Sprintf("A sample: yearly figures are counted up to %s hours, %s for each one looked at.", count(floor.HoursAYear), figures(y.Scale)), "")
 		}
@@ -183,23 +182,30 @@ func (p *floorPage) ways() {
 func (p *floorPage) policies() {
 	y := p.r.Year
 	p.section("A fixed floor as a rule, on top of the limits (" + p.c.Currency + " a year above the mix)")
-	p.line("  %s %s %s %s %s %s", padRight("rule, online before the loss", 32), padLeft("GW·s", 8), padLeft("hours kept", 11), padLeft("not kept", 9), padLeft("cost", 12), "")
+	p.text("Counted before the loss, not after it as in the instruction above.", "  ")
+	row := func(name, number, covers, kept, not, cost string) {
+		p.line("  %s  %s  %s  %s  %s %s", padRight(name, 28), padLeft(number, 6), padLeft(covers, 9), padLeft(kept, 7), padLeft(not, 8), padLeft(cost, 11))
+	}
+	row("rule, online before the loss", "GW·s", "covers, h", "kept, h", "not kept", "cost")
 	for i := range y.Rules {
 		k := &y.Rules[i]
-		cost := padLeft(p.yearlyMoney(k.Cost), 12)
-		if k.Kept == 0 {
-			cost = ""
-		}
+		name, number, cost := "by the hour's largest loss", "", ""
 		if len(k.Rule.Steps) == 1 {
-			name := map[string]string{"one number": "one number that covers all hours", "own number": "your number"}[k.Rule.Name]
-			p.line("  %s %s %s %s %s", padRight(name, 32), padLeft(threeDigits(k.Rule.Steps[0].MWs/1000), 8), padLeft(p.yearly(k.Kept), 11), padLeft(p.yearly(k.NotKept), 9), cost)
+			name = map[string]string{"one number": "one number for all hours", "own number": "your number"}[k.Rule.Name]
+			number = threeDigits(k.Rule.Steps[0].MWs / 1000)
+		}
+		if k.Kept > 0 {
+			cost = p.yearlyMoney(k.Cost)
+		}
+		row(name, number, p.yearly(k.Covers), p.yearly(k.Kept), p.yearly(k.NotKept), cost)
+		if len(k.Rule.Steps) == 1 {
 			continue
 		}
-		p.line("  %s %s %s %s %s", padRight("by the hour's largest loss", 32), padLeft("", 8), padLeft(p.yearly(k.Kept), 11), padLeft(p.yearly(k.NotKept), 9), cost)
 		for _, st := range k.Rule.Steps {
-			p.line("  %s %s", padRight(fmt.Sprintf("  up to %s MW, %s h", grouped(st.ToMW, 1), p.yearly(st.Hours)), 32), padLeft(threeDigits(st.MWs/1000), 8))
+			row(fmt.Sprintf("  up to %s MW, %s h", grouped(st.ToMW, 1), p.yearly(st.Hours)), threeDigits(st.MWs/1000), "", "", "", "")
 		}
 	}
+	p.text("Covers: hours whose own floor the number reaches by itself. A rule that covers fewer hours leaves the rest to the limits.", "  ")
 	mix, kept := 0.0, true
 	for _, h := range y.Hours {
 		if !h.Short {
