@@ -7,7 +7,6 @@ import (
 	"math"
 	"strconv"
 	"strings"
-	"time"
 
 	"evenkeel/limits"
 	"evenkeel/study/floor"
@@ -173,7 +172,7 @@ func floorWhenCSV(w io.Writer, r *floor.Result) error {
 }
 
 func policyCSV(w io.Writer, r *floor.Result) error {
-	head := []string{"policy", "loss_above_mw", "loss_up_to_mw", "floor_mws", "hours", "hours_kept", "hours_as_they_were", "hours_not_kept", "largest_lack_mws",
+	head := []string{"policy", "loss_above_mw", "loss_up_to_mw", "floor_mws", "hours", "hours_covered", "hours_kept", "hours_as_they_were", "hours_not_kept", "largest_lack_mws",
 		"mean_online_mws", "mix_mean_online_mws", "added_cost", "at_least", "at_most"}
 	return floorTable(w, head, func(row func(...string) error) error {
 		for i := range r.Year.Rules {
@@ -181,10 +180,10 @@ func policyCSV(w io.Writer, r *floor.Result) error {
 			for j, st := range k.Rule.Steps {
 				fields := []string{k.Rule.Name, fixed(st.FromMW, decMW), fixed(st.ToMW, decMW), fixed(st.MWs, decMW), strconv.Itoa(st.Hours)}
 				if j == 0 {
-					fields = append(fields, strconv.Itoa(k.Kept), strconv.Itoa(k.Same), strconv.Itoa(k.NotKept), fixed(k.LackMWs, decMW), fixed(k.OnlineMWs, decMW), fixed(k.MixMWs, decMW),
+					fields = append(fields, strconv.Itoa(k.Covers), strconv.Itoa(k.Kept), strconv.Itoa(k.Same), strconv.Itoa(k.NotKept), fixed(k.LackMWs, decMW), fixed(k.OnlineMWs, decMW), fixed(k.MixMWs, decMW),
 						fixed(k.Cost, decMoney), fixed(k.AtLeast, decMoney), fixed(k.AtMost, decMoney))
 				} else {
-					fields = append(fields, make([]string, 9)...)
+					fields = append(fields, make([]string, 10)...)
 				}
 				if err := row(fields...); err != nil {
 					return err
@@ -224,8 +223,8 @@ type instructionJSON struct {
 
 type floorInYear struct {
 	Hours      int              `json:"hours"`
-	First      string           `json:"first"`
-	Last       string           `json:"last"`
+	First      string           `json:"from"`
+	Last       string           `json:"last_hour_from"`
 	Scale      number           `json:"hours_of_a_year_for_each"`
 	Short      int              `json:"hours_short"`
 	Lacking    int              `json:"hours_lacking"`
@@ -249,6 +248,7 @@ type wayJS struct {
 type policyJSON struct {
 	Name    string     `json:"policy"`
 	Steps   []stepJSON `json:"floor"`
+	Covers  int        `json:"hours_covered"`
 	Kept    int        `json:"hours_kept"`
 	Same    int        `json:"hours_as_they_were"`
 	NotKept int        `json:"hours_not_kept"`
@@ -299,7 +299,7 @@ func floorSummary(r *floor.Result) floorJSON {
 func floorYearJSON(y *floor.Year) *floorInYear {
 	money := func(v float64) number { return number{v, decMoney} }
 	first, last := y.Hours[0], y.Hours[len(y.Hours)-1]
-	out := &floorInYear{Hours: len(y.Hours), First: stamp(first.Time), Last: stamp(last.Time.Add(time.Hour)), Scale: number{y.Scale, decShare}, Short: y.Short, Lacking: y.Lacking, NoInertia: y.NoInertia,
+	out := &floorInYear{Hours: len(y.Hours), First: stamp(first.Time), Last: stamp(last.Time), Scale: number{y.Scale, decShare}, Short: y.Short, Lacking: y.Lacking, NoInertia: y.NoInertia,
 		By: map[string]int{}, Over: y.LackOver, MeanGapMWs: mw(y.MeanGapMWs), Ways: map[string]wayJS{}, MendCost: money(y.MendCost)}
 	for k, n := range y.LackBy {
 		out.By[limits.Kind(k).String()] = n
@@ -316,7 +316,7 @@ func floorYearJSON(y *floor.Year) *floorInYear {
 	out.Ways["mix"] = way(&y.Mix)
 	for i := range y.Rules {
 		k := &y.Rules[i]
-		p := policyJSON{Name: k.Rule.Name, Kept: k.Kept, Same: k.Same, NotKept: k.NotKept, LackMWs: mw(k.LackMWs), Cost: money(k.Cost), AtLeast: money(k.AtLeast), AtMost: money(k.AtMost),
+		p := policyJSON{Name: k.Rule.Name, Covers: k.Covers, Kept: k.Kept, Same: k.Same, NotKept: k.NotKept, LackMWs: mw(k.LackMWs), Cost: money(k.Cost), AtLeast: money(k.AtLeast), AtMost: money(k.AtMost),
 			Online: mw(k.OnlineMWs), Mix: mw(k.MixMWs)}
 		for _, st := range k.Rule.Steps {
 			p.Steps = append(p.Steps, stepJSON{mw(st.FromMW), mw(st.ToMW), mw(st.MWs), st.Hours})

@@ -206,7 +206,7 @@ func floorWhen(r *floor.Result) figure {
 		return w.MeanGapMWs() / most, fixed(w.MeanGapMWs()/1000, 1)
 	})
 	much.X.Label.Text = "hour of the day (UTC)"
-	below := fmt.Sprintf("%s; a dispatch that knows the steady-state limit alone, against its own floor%s", yearWords(y), blankWords(y))
+	below := fmt.Sprintf("%s; a dispatch for the steady state alone, against its own floor%s", yearWords(y), cellWords(y))
 	return figure{width: 10 * vg.Inch, height: 7 * vg.Inch, draw: func(canvas draw.Canvas) {
 		area := heading(blank(canvas), "When inertia lacks: "+r.Case.Name, below)
 		half := (area.Max.Y - area.Min.Y) / 2
@@ -214,15 +214,30 @@ func floorWhen(r *floor.Result) figure {
 	}}
 }
 
-func blankWords(y *floor.Year) string {
+// cellWords say how few hours of a sample a cell stands for, and what a blank one is.
+func cellWords(y *floor.Year) string {
+	hours, cells, blanks := 0, 0, 0
 	for m := range y.When {
 		for h := range y.When[m] {
-			if y.When[m][h].Hours == 0 {
-				return "; blank: no hour looked at"
+			if n := y.When[m][h].Hours; n > 0 {
+				hours, cells = hours+n, cells+1
+			} else {
+				blanks++
 			}
 		}
 	}
-	return ""
+	sample := y.Scale != 1 && cells > 0
+	about := ""
+	if sample {
+		about = fmt.Sprintf("; about %s a cell", hoursOf(int(math.Round(float64(hours)/float64(cells)))))
+	}
+	switch {
+	case blanks > 0 && sample:
+		return about + ", none where blank"
+	case blanks > 0:
+		return "; blank: no hour looked at"
+	}
+	return about
 }
 
 // yearWords say which hours a study looked at.

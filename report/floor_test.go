@@ -3,6 +3,7 @@ package report
 import (
 	"bytes"
 	"math"
+	"slices"
 	"strings"
 	"testing"
 	"unicode/utf8"
@@ -69,7 +70,7 @@ func TestFloorText(t *testing.T) {
 		}
 		want := []string{r.Case.Name, "Operating instruction", Caution[:30]}
 		if r.Year != nil {
-			want = append(want, "Hours lacking", "45.7 GW·s", "constrain machines on", "cheapest mix of all", "one number that covers all hours", "up to 20.0 MW", "Not kept")
+			want = append(want, "Hours lacking", "45.7 GW·s", "constrain machines on", "cheapest mix of all", "one number for all hours", "Covers: hours whose own floor", "up to 20.0 MW", "Not kept")
 		}
 		for _, w := range want {
 			if !strings.Contains(out.String(), w) {
@@ -92,6 +93,44 @@ func TestFloorInstructions(t *testing.T) {
 	for i := range got {
 		if got[i] != want[i] {
 			t.Errorf("line %d is %+v, want %+v", i, got[i], want[i])
+		}
+	}
+}
+
+// With a year there are lines for losses that are the largest in no hour too: a quarter of the largest,
+// 29.9 MW, lies in the chart's first cell, half of it and the median in the second (computed).
+func TestFloorInstructionsOfSmallLosses(t *testing.T) {
+	var got []float64
+	for _, n := range floorResult(300, 29.2).Instructions(0) {
+		if len(got) == 0 || got[len(got)-1] != n.LossMW {
+			got = append(got, n.LossMW)
+		}
+	}
+	if !slices.Equal(got, []float64{10, 20, 30}) {
+		t.Errorf("lines for losses up to %v", got)
+	}
+}
+
+// An instruction does not start where the steady state is only just kept and a little more response
+// saves much; where no kinetic energy is enough, it says with how much and what helps.
+func TestFloorInstructionsAtTheBrink(t *testing.T) {
+	r := floorResult(0, 1)
+	k := &r.Charts[0]
+	row := k.Cells[k.Held.N : 2*k.Held.N] // 20 MW
+	row[1].FloorMWs, row[1].By = 1000, limits.Steady
+	for _, n := range r.Instructions(0) {
+		if n.LossMW == 20 && n.HeldMW < 20 {
+			t.Errorf("a line with %g MW held and %g MW·s", n.HeldMW, n.FloorMWs)
+		}
+	}
+	k.Cells[len(k.Cells)-1].FloorMWs = math.Inf(1)
+	var out bytes.Buffer
+	if err := FloorText(&out, r); err != nil {
+		t.Fatal(err)
+	}
+	for _, w := range []string{"40.0 MW     none is enough with up to 30.0 MW", "Where none is enough: hold more"} {
+		if !strings.Contains(out.String(), w) {
+			t.Errorf("nothing says %q in\n%s", w, out.String())
 		}
 	}
 }

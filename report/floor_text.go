@@ -5,7 +5,6 @@ import (
 	"io"
 	"math"
 	"slices"
-	"time"
 
 	"evenkeel/limits"
 	"evenkeel/study/floor"
@@ -17,7 +16,7 @@ func FloorText(w io.Writer, r *floor.Result) error {
 	p.text("How much inertia must be online: "+r.Case.Name, "")
 	if y := r.Year; y != nil {
 		first, last := y.Hours[0], y.Hours[len(y.Hours)-1]
-		p.line("%s, %s to %s UTC", hoursOf(len(y.Hours)), minute(first.Time), minute(last.Time.Add(time.Hour)))
+		p.line("%s, %s to %s UTC", hoursOf(len(y.Hours)), minute(first.Time), minute(last.Time))
 		if y.Scale != 1 {
 			p.text(fmt.Sprintf("A sample: yearly figures are counted up to %s hours, %s for each one looked at.", count(floor.HoursAYear), figures(y.Scale)), "")
 		}
@@ -31,7 +30,7 @@ func FloorText(w io.Writer, r *floor.Result) error {
 	if r.Case.Above != nil && r.Year != nil {
 		above = "; what losses of load need counts in what follows"
 	}
-	p.text("Response and kinetic energy count as they are left after the loss. Where a loss has two lines, more response than in the second saves no more inertia. A cell is the larger of what the rows ask for and what closed-loop bisection finds, relays left out. Losses of infeed only"+above+".", "")
+	p.text("Response and kinetic energy count as they are left after the loss. A cell is the larger of what the rows ask for and what closed-loop bisection finds, relays left out. Losses of infeed only"+above+".", "")
 	if r.Year != nil {
 		p.lacking()
 		p.ways()
@@ -60,23 +59,7 @@ func (p *floorPage) chart(i int) {
 	k := &p.r.Charts[i]
 	name := p.c.Shapes[k.Shape].Name
 	p.section("Operating instruction: kinetic energy to keep online, counted after the loss")
-	held := clip(name, 24) + " left"
-	p.line("  %s   %s   %s  %s", padLeft("loss up to", 12), padLeft(held, 29), padLeft("keep", 14), "set by")
-	last := math.Inf(-1)
-	for _, n := range p.r.Instructions(i) {
-		loss, from := "", grouped(n.HeldMW, 1)+" MW or more"
-		if n.HeldMW == 0 {
-			from = "any"
-		}
-		if n.LossMW != last {
-			loss = grouped(n.LossMW, 1) + " MW"
-		}
-		last = n.LossMW
-		if math.IsInf(n.FloorMWs, 1) {
-			from = "up to " + grouped(n.HeldMW, 1) + " MW"
-		}
-		p.line("  %s   %s   %s  %s", padLeft(loss, 12), padLeft(from, 29), padLeft(gws(n.FloorMWs), 14), n.By.Word())
-	}
+	p.instruction(i)
 	others := ""
 	if p.r.Year != nil && slices.ContainsFunc(p.r.Ask.HeldMW, math.IsNaN) {
 		others = " (by default: medians of the tenth of the hours with the largest losses)"
@@ -108,6 +91,47 @@ func (p *floorPage) chart(i int) {
 	}
 	p.text(fmt.Sprintf("Of %s cells of the chart %s are set by RoCoF, %s by the nadir, %s by the steady state; in %s no inertia is enough. %s",
 		count(len(k.Cells)), count(by[limits.RoCoF]), count(by[limits.Nadir]), count(by[limits.Steady]), count(none), closed), "  ")
+}
+
+// instruction is one line a loss: the least response, and from where on more of it saves nothing.
+func (p *floorPage) instruction(i int) {
+	k := &p.r.Charts[i]
+	name := p.c.Shapes[k.Shape].Name
+	const loss, held, keep, by = 12, 12, 10, 6
+	pair := func(at, mws, kind string) string {
+		return padLeft(at, held) + " " + padLeft(mws, keep) + "  " + padRight(kind, by)
+	}
+	at := func(n floor.Instruction) string {
+		return pair(grouped(n.HeldMW, 1)+" MW", gws(n.FloorMWs), n.By.Word())
+	}
+	lines := p.r.Instructions(i)
+	p.text(fmt.Sprintf("By how much of %s is left. Below \"at least\" none is enough, or far more. Beyond \"saves up to\", or where that is blank, more saves little.", name), "  ")
+	p.line("  %s  %s  %s", padLeft("loss up to", loss), pair("at least", "keep", "set by"), pair("saves up to", "keep", "set by"))
+	none, uncharted := false, false
+	for j := 0; j < len(lines); j++ {
+		n := lines[j]
+		first, second := at(n), ""
+		switch {
+		case math.IsInf(n.FloorMWs, 1):
+			none = true
+			first = "   none is enough with up to " + grouped(n.HeldMW, 1) + " MW"
+		case n.HeldMW == 0:
+			first = pair("any", gws(n.FloorMWs), n.By.Word())
+		case n.HeldMW == k.Held.At(0):
+			uncharted = true
+		}
+		if j+1 < len(lines) && lines[j+1].LossMW == n.LossMW {
+			j++
+			second = at(lines[j])
+		}
+		p.line("  %s  %s  %s", padLeft(grouped(n.LossMW, 1)+" MW", loss), first, second)
+	}
+	if uncharted {
+		p.text(fmt.Sprintf("The axis begins at %s MW: less was not looked at.", grouped(k.Held.At(0), 1)), "  ")
+	}
+	if none {
+		p.text(fmt.Sprintf("Where none is enough: hold more that stays to the steady state, of %s (--held %s=A:B:N; the axis ends at %s MW) or besides it, or cut the loss.", name, name, grouped(k.Held.To, 1)), "  ")
+	}
 }
 
 // yearly counts hours up to a year.
@@ -183,23 +207,30 @@ func (p *floorPage) ways() {
 func (p *floorPage) policies() {
 	y := p.r.Year
 	p.section("A fixed floor as a rule, on top of the limits (" + p.c.Currency + " a year above the mix)")
-	p.line("  %s %s %s %s %s %s", padRight("rule, online before the loss", 32), padLeft("GW·s", 8), padLeft("hours kept", 11), padLeft("not kept", 9), padLeft("cost", 12), "")
+	p.text("Counted before the loss, not after it as in the instruction above.", "  ")
+	row := func(name, number, covers, kept, not, cost string) {
+		p.line("  %s  %s  %s  %s  %s %s", padRight(name, 28), padLeft(number, 6), padLeft(covers, 9), padLeft(kept, 7), padLeft(not, 8), padLeft(cost, 11))
+	}
+	row("rule, online before the loss", "GW·s", "covers, h", "kept, h", "not kept", "cost")
 	for i := range y.Rules {
 		k := &y.Rules[i]
-		cost := padLeft(p.yearlyMoney(k.Cost), 12)
-		if k.Kept == 0 {
-			cost = ""
-		}
+		name, number, cost := "by the hour's largest loss", "", ""
 		if len(k.Rule.Steps) == 1 {
-			name := map[string]string{"one number": "one number that covers all hours", "own number": "your number"}[k.Rule.Name]
-			p.line("  %s %s %s %s %s", padRight(name, 32), padLeft(threeDigits(k.Rule.Steps[0].MWs/1000), 8), padLeft(p.yearly(k.Kept), 11), padLeft(p.yearly(k.NotKept), 9), cost)
+			name = map[string]string{"one number": "one number for all hours", "own number": "your number"}[k.Rule.Name]
+			number = threeDigits(k.Rule.Steps[0].MWs / 1000)
+		}
+		if k.Kept > 0 {
+			cost = p.yearlyMoney(k.Cost)
+		}
+		row(name, number, p.yearly(k.Covers), p.yearly(k.Kept), p.yearly(k.NotKept), cost)
+		if len(k.Rule.Steps) == 1 {
 			continue
 		}
-		p.line("  %s %s %s %s %s", padRight("by the hour's largest loss", 32), padLeft("", 8), padLeft(p.yearly(k.Kept), 11), padLeft(p.yearly(k.NotKept), 9), cost)
 		for _, st := range k.Rule.Steps {
-			p.line("  %s %s", padRight(fmt.Sprintf("  up to %s MW, %s h", grouped(st.ToMW, 1), p.yearly(st.Hours)), 32), padLeft(threeDigits(st.MWs/1000), 8))
+			row(fmt.Sprintf("  up to %s MW, %s h", grouped(st.ToMW, 1), p.yearly(st.Hours)), threeDigits(st.MWs/1000), "", "", "", "")
 		}
 	}
+	p.text("Covers: hours whose own floor the number reaches by itself. A rule that covers fewer hours leaves the rest to the limits.", "  ")
 	mix, kept := 0.0, true
 	for _, h := range y.Hours {
 		if !h.Short {

@@ -146,6 +146,17 @@ func TestYear(t *testing.T) {
 			t.Errorf("%s has %g MW·s online, the mixes %g", k.Rule.Name, k.OnlineMWs, k.MixMWs)
 		}
 	}
+	for i, k := range y.Rules { // made to cover every hour, or none, or some
+		n := 0
+		for _, h := range y.Hours {
+			if h.Mix.FloorMWs <= k.Rule.step(h.Mix.LargestMW).MWs {
+				n++
+			}
+		}
+		if k.Covers != n || i < 2 && n != len(y.Hours) || i == 2 && (n == 0 || n == len(y.Hours)) || i == 3 && n != 0 {
+			t.Errorf("%s of %g MW·s covers %d of %d hours, counted again %d", k.Rule.Name, k.Rule.Steps[0].MWs, k.Covers, len(y.Hours), n)
+		}
+	}
 	if last := y.Rules[3]; last.Same != len(y.Hours) || last.Cost != 0 {
 		t.Errorf("a rule of 1 MW·s changes something: %+v", last)
 	}

@@ -2,6 +2,7 @@ package floor
 
 import (
 	"math"
+	"slices"
 
 	"evenkeel/limits"
 )
@@ -16,22 +17,29 @@ type Instruction struct {
 const (
 	enough = 1.02 // by how much the floor may still fall where more response is of no more use
 	worth  = 1.05 // by how much it must fall up to there to be worth a line
+	brink  = 1.5  // by how much it falls with a cell more response where the steady state is only just kept
 )
 
 // Instructions are the few cells of a chart that an operating instruction needs. The losses are
-// those that half of the hours, nine in ten and all of them do not pass, or thirds of the chart
-// without a year, on the chart's next cell. For each they give the least response with which some
-// kinetic energy is enough, and the response from which on more of it saves no more inertia. Each
-// number covers all smaller losses and all more response on the chart.
+// those that half of the hours and nine in ten do not pass, and quarters of the largest, for those that
+// are the largest in no hour; without a year, quarters of the chart; each on the chart's next cell. For
+// each they give the least response with which some kinetic energy is enough, where a little more does
+// not save much of it, and the response from which on more of it saves no more inertia. Each number
+// covers all smaller losses and all more response on the chart. Where no kinetic energy is enough, the
+// one line is the end of the chart.
 func (r *Result) Instructions(chart int) []Instruction {
 	k := &r.Charts[chart]
-	losses := []float64{k.Loss.At(k.Loss.N / 3), k.Loss.At(2 * k.Loss.N / 3), k.Loss.To}
+	var losses []float64
 	if r.Year != nil {
 		var lost []float64
 		for _, h := range r.Year.Hours {
 			lost = append(lost, h.Mix.LargestMW)
 		}
-		losses = []float64{quantileOf(lost, 0.5), quantileOf(lost, 0.9), quantileOf(lost, 1)}
+		most := quantileOf(lost, 1)
+		losses = []float64{most / 4, most / 2, 3 * most / 4, quantileOf(lost, 0.5), quantileOf(lost, 0.9), most}
+		slices.Sort(losses)
+	} else {
+		losses = []float64{k.Loss.At(k.Loss.N / 4), k.Loss.At(k.Loss.N / 2), k.Loss.At(3 * k.Loss.N / 4), k.Loss.To}
 	}
 	const rounding = 1e-9
 	var out []Instruction
@@ -70,6 +78,9 @@ func (k *Chart) instructions(i int) []Instruction {
 	}
 	first := 0
 	for math.IsInf(lines[first].FloorMWs, 1) {
+		first++
+	}
+	for first+1 < k.Held.N && lines[first].By == limits.Steady && lines[first].FloorMWs > brink*lines[first+1].FloorMWs {
 		first++
 	}
 	best := first

@@ -62,6 +62,7 @@ type WayCost struct {
 // RuleCost is what the hours cost under a rule, above the secure mixes.
 type RuleCost struct {
 	Rule      Rule
+	Covers    int // hours whose floor, in the secure mix, its number reaches without the limits
 	Kept      int // hours
 	Same      int // of them, those whose mix had it online as it was
 	NotKept   int
@@ -167,6 +168,9 @@ func (s *Study) ruleCost(r int, kept [][]Kept) RuleCost {
 	for i, h := range s.hours {
 		if h.Short {
 			continue
+		}
+		if h.Mix.FloorMWs <= c.Rule.step(h.Mix.LargestMW).MWs {
+			c.Covers++
 		}
 		k := &kept[i][r]
 		if !k.Met {
