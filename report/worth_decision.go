@@ -48,7 +48,7 @@ func (p *worthPage) rightAt(k int) string {
 	from, to := p.r.PricesOf(k)
 	volume := plain(roundMW(p.r.VolumesMW[k])) + " MW"
 	if !(from < to) {
-		return volume + " is the best of the volumes at no price, see the list above"
+		return volume + " is the best volume at no yearly price: the list above gives those that are"
 	}
 	return fmt.Sprintf("%s is right at any price between %s and %s a MW and year on top of the hourly pay", volume, grouped(from, 0), amount(to)+" "+p.c.Currency)
 }

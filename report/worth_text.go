@@ -208,7 +208,7 @@ func (p *worthPage) exchange() {
 	}
 	note := "Rates of the next small part of a MW, with" + strings.TrimPrefix(held, ",") + " held. What comes after the instant that governs, or is gone by then, replaces nothing."
 	if below {
-		note += " A governor whose first move is the wrong way (hydro) counts below zero while that lasts."
+		note += " What has gone the wrong way by then counts below zero: a hydro governor does so at first, a wind rotor when it recovers."
 	}
 	if dash {
 		note += " No rate (–): nothing governs, no reserve helps, or in the steady state, where inertia does not help."

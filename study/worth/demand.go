@@ -13,7 +13,7 @@ type Demand struct {
 }
 
 // PricesOf gives the prices a MW and year, 0 or more, at which a volume is the best of those looked at. There are
-// none where from is not below to: mixes of other volumes always do better.
+// none where from is not below to: at every price another volume does as well or better.
 func (r *Result) PricesOf(k int) (from, to float64) {
 	to = math.Inf(1)
 	for j := range r.VolumesMW {
