@@ -16,7 +16,7 @@ type WorthOptions struct {
 	Gap, StartSpreadH float64
 	Sample            bool // not every hour of the case was looked at
 	AtGiven           bool
-	At                float64 // what the next MW must save a year
+	At                float64 // a yearly price per MW, on top of what holding asks for by the hour
 }
 
 // WorthLoss says how the largest loss is treated in convex hull prices.
@@ -54,6 +54,7 @@ func WriteWorth(dir string, r *worth.Result, x *worth.Exchange, o WorthOptions) 
 		}{
 			{"worth-prices-with.csv", func(w io.Writer) error { return worthPricesCSV(w, r, 1) }},
 			{"product.csv", func(w io.Writer) error { return productCSV(w, r) }},
+			{"demand.csv", func(w io.Writer) error { return demandCSV(w, r) }},
 			{"product-hours.csv", func(w io.Writer) error { return productHoursCSV(w, r) }},
 			{"displaced.csv", func(w io.Writer) error { return displacedCSV(w, r) }},
 		}...)

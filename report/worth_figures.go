@@ -1,6 +1,7 @@
 package report
 
 import (
+	"cmp"
 	"fmt"
 	"image/color"
 	"math"
@@ -196,7 +197,24 @@ func rateStyles(r *worth.Result, x *worth.Exchange) []draw.LineStyle {
 	return styles
 }
 
-const courseCells = 161
+const (
+	courseCells = 161
+	stripShare  = 0.07 // of the height
+)
+
+// byEnd orders a key by the value of its lines at their right ends, the highest first.
+func byEnd(key []entry, ends []float64) []entry {
+	order := make([]int, len(key))
+	for i := range order {
+		order[i] = i
+	}
+	slices.SortStableFunc(order, func(a, b int) int { return cmp.Compare(ends[b], ends[a]) })
+	out := make([]entry, len(key))
+	for i, k := range order {
+		out[i] = key[k]
+	}
+	return out
+}
 
 // exchangeFigure shows what one MW of each response replaces after the largest loss, over the kinetic
 // energy left.
@@ -208,10 +226,12 @@ func exchangeFigure(r *worth.Result, x *worth.Exchange) figure {
 	lower.Add(rules{})
 	var key []entry
 	styles := rateStyles(r, x)
-	top := [2]float64{1, 0}
+	top, low := [2]float64{1, 0}, [2]float64{}
+	var ends []float64
 	for s := range x.Shapes {
 		style := styles[s]
 		key = append(key, entry{name: x.Names[s], line: ptr(style)})
+		end := math.Inf(-1) // at the right of the lower plot
 		for of, p := range []*plot.Plot{upper, lower} {
 			var line [][2]float64
 			for i := range cells {
@@ -226,12 +246,17 @@ func exchangeFigure(r *worth.Result, x *worth.Exchange) figure {
 				if of == 1 {
 					v = c.Rates[s].InertiaMWs
 				}
-				top[of] = max(top[of], v)
+				top[of], low[of] = max(top[of], v), min(low[of], v)
+				if of == 1 {
+					end = v
+				}
 				line = append(line, [2]float64{c.InertiaMWs / 1000, v})
 			}
 			p.Add(path{line, style})
 		}
+		ends = append(ends, end)
 	}
+	key = byEnd(key, ends)
 	seen := map[string]bool{}
 	for i := range cells {
 		name := governsText(&cells[i])
@@ -246,8 +271,12 @@ func exchangeFigure(r *worth.Result, x *worth.Exchange) figure {
 	for of, p := range []*plot.Plot{upper, lower} {
 		p.X.Min, p.X.Max = cells[0].InertiaMWs/1000, max(cells[len(cells)-1].InertiaMWs/1000, cells[0].InertiaMWs/1000+0.001)
 		p.Y.Min, p.Y.Max = 0, roundUp(top[of])
+		if low[of] < 0 {
+			p.Y.Min = -roundUp(-low[of])
+		}
+		p.Y.Min -= stripShare * (p.Y.Max - p.Y.Min) // room for the strip, below every line
 		p.X.Tick.Marker, p.Y.Tick.Marker = niceTicks(8), niceTicks(5)
-		p.Add(strip{cells})
+		p.Add(zeroLine{}, strip{cells})
 	}
 	upper.Y.Label.Text = "MW of " + clip(x.Names[x.Primary], 24)
 	lower.Y.Label.Text = "MW·s of inertia"

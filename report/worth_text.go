@@ -30,7 +30,9 @@ func WorthText(w io.Writer, r *worth.Result, x *worth.Exchange, o WorthOptions) 
 	if r.Product != nil {
 		p.product()
 		p.displaced()
+		p.demand()
 		p.decision()
+		p.speed()
 	}
 	p.line("")
 	p.text(WorthLoss, "")
@@ -196,7 +198,22 @@ func (p *worthPage) exchange() {
 	if held == "" {
 		held = ", nothing else"
 	}
-	p.text("Rates of the next small part of a MW, with"+strings.TrimPrefix(held, ",")+" held. What comes after the instant that governs, or is gone by then, replaces nothing; in the steady state inertia does not help (–).", "  ")
+	dash, below := false, false
+	for i := range cells {
+		c := &cells[i]
+		dash = dash || !c.Rated() || c.InertiaPerPrimary == 0
+		if c.Rated() {
+			below = below || slices.ContainsFunc(c.Rates, func(t worth.Rate) bool { return t.PrimaryMW < 0 })
+		}
+	}
+	note := "Rates of the next small part of a MW, with" + strings.TrimPrefix(held, ",") + " held. What comes after the instant that governs, or is gone by then, replaces nothing."
+	if below {
+		note += " What has gone the wrong way by then counts below zero: a hydro governor does so at first, a wind rotor when it recovers."
+	}
+	if dash {
+		note += " No rate (–): nothing governs, no reserve helps, or in the steady state, where inertia does not help."
+	}
+	p.text(note, "  ")
 }
 
 // rated prints a rate where there is one.
@@ -318,16 +335,16 @@ func (p *worthPage) decision() {
 	last := len(r.VolumesMW) - 1
 	k := r.Choice(p.w.AtGiven, p.w.At)
 	if p.w.AtGiven {
-		price := amount(p.w.At) + " " + p.c.Currency + " a MW and year"
+		price := amount(p.w.At) + " " + p.c.Currency + " a MW and year on top of its hourly pay"
 		switch {
 		case k == 0:
 			p.text(fmt.Sprintf("Buy none of it at %s: no volume looked at saves that much a MW.", price), "")
 		case k == last:
-			p.text(fmt.Sprintf("Buy all %s MW at %s: even the last MW saves more. It saves %s a year, %s of it beyond that price.",
-				plain(r.VolumesMW[k]), price, p.money(r.Points[k].Net), amount(r.Points[k].Net-p.w.At*r.VolumesMW[k])), "")
+			p.text(fmt.Sprintf("Buy all %s MW at %s: even the last MW saves more. %s",
+				plain(r.VolumesMW[k]), price, p.bill(k)), "")
 		default:
-			p.text(fmt.Sprintf("Buy about %s MW: beyond it the next MW saves less than %s. It saves %s a year, %s of it beyond that price.",
-				plain(roundMW(r.VolumesMW[k])), price, p.money(r.Points[k].Net), amount(r.Points[k].Net-p.w.At*r.VolumesMW[k])), "")
+			p.text(fmt.Sprintf("Buy about %s MW: beyond it the next MW saves less than %s. %s",
+				plain(roundMW(r.VolumesMW[k])), price, p.bill(k)), "")
 		}
 		return
 	}
@@ -343,8 +360,8 @@ func (p *worthPage) decision() {
 	default:
 		next = ", and the next MW saves nothing"
 	}
-	p.text(fmt.Sprintf("Buy about %s MW: they bring %s %% of what there is to save (%s a year)%s. --at PRICE finds the volume for what a MW costs a year.",
-		plain(roundMW(r.VolumesMW[k])), fixed(100*r.Points[k].Net/r.Points[r.Best(0)].Net, 0), p.money(r.Points[k].Net), next), "")
+	p.text(fmt.Sprintf("Buy about %s MW: they bring %s %% of what there is to save (%s a year)%s. %s.",
+		plain(roundMW(r.VolumesMW[k])), fixed(100*r.Points[k].Net/r.Points[r.Best(0)].Net, 0), p.money(r.Points[k].Net), next, p.rightAt(k)), "")
 }
 
 func roundMW(v float64) float64 { return math.Round(v*10) / 10 }

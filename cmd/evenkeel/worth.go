@@ -46,12 +46,12 @@ func worthCommand() *cobra.Command {
 	fl := cmd.Flags()
 	fl.StringVar(&f.product, "product", "", "product `FILE`")
 	fl.StringVar(&f.volumes, "volumes", "", "MW of the product there may be, N from A to B, as `A:B:N`; A is 0 (default 11 up to its cap)")
-	fl.Float64SliceVar(&f.activations, "activation", nil, "look at another activation time too, at the last volume, `seconds`; can be repeated")
+	fl.Float64SliceVar(&f.activations, "activation", nil, "look at other activation times too, at the last volume, `seconds`, comma-separated")
 	fl.StringVar(&f.primary, "primary", "", "`SHAPE` that the exchange rates count in (default: the slowest that is held and stays)")
 	fl.StringArrayVar(&f.held, "held", nil, "MW of another response held in the exchange rates, as `SHAPE=MW`; can be repeated")
 	fl.Float64SliceVar(&f.inertia, "inertia", nil, "kinetic energies left after the loss for the exchange rates, `MW·s`, comma-separated (default: P10, P50, P90 of the hours)")
 	fl.Float64SliceVar(&f.losses, "loss", nil, "losses for the exchange rates, `MW`, comma-separated (default: P10, P50, P90 and the largest of the hours)")
-	fl.Float64Var(&f.at, "at", 0, "what the next MW of the product must save a year to be bought, `price` per MW and year")
+	fl.Float64Var(&f.at, "at", 0, "yearly `price` per MW of the product, paid on top of what holding it asks for by the hour (price_steps): find the volume to buy at it")
 	for _, name := range []string{"activation", "inertia", "loss"} {
 		fl.Lookup(name).DefValue = "" // an empty list is no default to print
 	}
@@ -108,7 +108,7 @@ func runWorth(cmd *cobra.Command, path string, f worthFlags) error {
 		return bad("%w", err)
 	}
 	items := work.New[worth.Record](len(plan.Hours))
-	what := fmt.Sprint("worth ", c.Hash, hash, plan.Hours, plan.VolumesMW, plan.ActivationsS, plan.Options)
+	what := fmt.Sprint("worth ", c.Hash, hash, plan.Hours, plan.VolumesMW, s.ActivationsS, plan.Options)
 	err = runStudy(cmd.Context(), &f.studyFlags, what, "hours", items, func() func(context.Context, int) (worth.Record, error) { return s.Hour })
 	if err != nil {
 		return err

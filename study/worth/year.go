@@ -110,7 +110,13 @@ func (p Plan) Prepare() (*Study, error) {
 		}
 		s.Rungs = append(s.Rungs, c)
 	}
-	for _, a := range p.ActivationsS {
+	s.ActivationsS = nil
+	for _, a := range p.ActivationsS { // each once
+		if !slices.Contains(s.ActivationsS, a) {
+			s.ActivationsS = append(s.ActivationsS, a)
+		}
+	}
+	for _, a := range s.ActivationsS {
 		if !(a > 0) || math.IsInf(a, 0) {
 			return nil, fmt.Errorf("the activation time is %g s; it must be above 0", a)
 		}

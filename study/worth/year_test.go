@@ -254,6 +254,13 @@ func TestVolumeToBuy(t *testing.T) {
 			t.Errorf("at %v a MW: volume %d, want %d", price, got, want)
 		}
 	}
+	for k, want := range [][2]float64{{10, math.Inf(1)}, {6, 10}, {2, 6}, {0.2, 2}, {0, 0.2}} {
+		from, to := r.PricesOf(k)
+		near(t, "from", from, want[0], 1e-9)
+		if to != want[1] {
+			near(t, "to", to, want[1], 1e-9)
+		}
+	}
 	if got := r.Choice(false, 0); got != 3 { // 180 of 182 is the first above 90 %
 		t.Errorf("without a price: volume %d, want 3", got)
 	}
