@@ -22,7 +22,11 @@ func readCase(t testing.TB, path string) *fleet.Case {
 // Mixes of the demo that count as secure hold in closed loop after every single loss: simulated
 // anew, tightly, to the very end.
 func TestSecureHoursHoldInClosedLoop(t *testing.T) {
-	provenEverywhere(t, readCase(t, filepath.Join("..", "testdata", "skerra", "case.yaml")), 83)
+	every := 83
+	if testing.Short() {
+		every = 499
+	}
+	provenEverywhere(t, readCase(t, filepath.Join("..", "testdata", "skerra", "case.yaml")), every)
 }
 
 // A harder system: a steep fall, hydro with a long water column, a battery that is set off
