@@ -229,6 +229,9 @@ func (r *reader) qualify() {
 		if who < 0 || !(most > 0) {
 			continue
 		}
+		if l := r.c.Limits; math.IsNaN(l.NominalHz + l.SteadyUntilS + m.Test.HzPerS + m.Test.ToHz + rating + most) {
+			continue // a fault of these is reported where it stands
+		}
 		s, end, err := m.delivered(&sim, r.c.Limits, rating, most)
 		if err != nil {
 			r.fault(r.shapeInputs[m.Shape].section.line, r.shapeInputs[m.Shape].section.path, "a model that delivers nothing in its qualification", "some response before it ends ("+err.Error()+")")
