@@ -17,6 +17,15 @@ type NamedModel struct {
 	Shape int // index into Case.Shapes
 }
 
+// ModelOf gives the model of each shape; nil: the shape is a promise.
+func (c *Case) ModelOf() []*dynamic.Model {
+	of := make([]*dynamic.Model, len(c.Shapes))
+	for i := range c.Models {
+		of[c.Models[i].Shape] = c.Models[i].Model
+	}
+	return of
+}
+
 // paramKeys are the keys of each kind of model.
 var paramKeys = map[dynamic.Kind][]string{
 	dynamic.Steam: {"droop_pct", "gain", "deadband_hz", "rate_pct_per_s", "governor_s", "chest_s", "reheat_s", "high_pressure_share"},

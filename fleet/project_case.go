@@ -90,10 +90,10 @@ func (p *Project) Shape(c *Case) int {
 	return len(c.Shapes)
 }
 
-// In is the case with the project built: a changed copy. power is the MW of the converter that
-// response and synthetic inertia share, response the MW of response it holds at most and, as its
-// energy is counted for both, those that offer synthetic inertia; a
-// condenser is whole machines of power MVA in all. With nothing built the resource and its
+// In is the case with the project built: a changed copy. powerMW is the converter's,
+// which response and synthetic inertia share. responseMW is the most response that it holds; synthetic
+// inertia is offered for as many MW, as the energy is counted for both. A condenser is whole machines
+// of powerMW MVA in all. With nothing built the resource and its
 // shape are there all the same, so that its services have a price. Cases that differ in power and
 // response alone have the same resources, shapes and losses.
 func (p *Project) In(c *Case, powerMW, responseMW, activationS float64) (*Case, error) {
@@ -133,7 +133,7 @@ func (p *Project) In(c *Case, powerMW, responseMW, activationS float64) (*Case, 
 	// Its loss takes no output from the system, and what it held is not needed for any other.
 	r := Resource{Name: p.Name, Kind: Battery, Count: 1, PowerMW: powerMW, Response: response, Down: Response{Shape: -1},
 		SyntheticMWs: Value{Const: p.SyntheticMWsPerMW * responseMW}, SyntheticPerMWs: p.SyntheticPerMWs, SyntheticS: p.SyntheticS}
-	r.EnergyMWh = math.MaxFloat64 / 3600 // counted before: it has cut responseMW
+	r.EnergyMWh = math.Inf(1) // counted before: it has cut responseMW
 	if p.Down {
 		r.Down = Response{CapMW: response.CapMW, PricePerMW: p.DownPricePerMW, Shape: response.Shape}
 	}

@@ -14,6 +14,7 @@ import (
 
 	"evenkeel/limits"
 	"evenkeel/study/floor"
+	"evenkeel/study/ranges"
 )
 
 // limitColors are those of the limits in every figure.
@@ -67,7 +68,7 @@ func tint(c color.Color, share float64) color.Color {
 var noFloor = rgb(0x555555)
 
 // halves gives the borders of the tile around value i of a range.
-func halves(r floor.Range, i int) (lo, hi float64) {
+func halves(r ranges.Range, i int) (lo, hi float64) {
 	step := r.At(1) - r.At(0)
 	if r.N < 2 || step == 0 {
 		step = max(r.To, 1)

@@ -10,13 +10,14 @@ import (
 
 	"evenkeel/limits"
 	"evenkeel/study/floor"
+	"evenkeel/study/ranges"
 )
 
 // floorResult is a made-up study of so many hours.
 func floorResult(hours int, scale float64) *floor.Result {
 	c, _, _ := synthYear(9, 2031)
 	r := &floor.Result{Case: c, Ask: &floor.Ask{HeldMW: []float64{math.NaN()}}}
-	k := floor.Chart{Shape: 0, Loss: floor.Range{From: 10, To: 40, N: 4}, Held: floor.Range{From: 0, To: 30, N: 4}, Others: make([]float64, len(c.Shapes)), LoadMW: 12345.6}
+	k := floor.Chart{Shape: 0, Loss: ranges.Range{From: 10, To: 40, N: 4}, Held: ranges.Range{From: 0, To: 30, N: 4}, Others: make([]float64, len(c.Shapes)), LoadMW: 12345.6}
 	k.Others[len(k.Others)-1] = 1234.5
 	for i := range k.Loss.N {
 		for j := range k.Held.N {

@@ -8,6 +8,7 @@ import (
 
 	"evenkeel/limits"
 	"evenkeel/study/floor"
+	"evenkeel/study/ranges"
 )
 
 // FloorText writes what a study of inertia floors has found, for people.
@@ -18,7 +19,7 @@ func FloorText(w io.Writer, r *floor.Result) error {
 		first, last := y.Hours[0], y.Hours[len(y.Hours)-1]
 		p.line("%s, %s to %s UTC", hoursOf(len(y.Hours)), minute(first.Time), minute(last.Time))
 		if y.Scale != 1 {
-			p.text(fmt.Sprintf("A sample: yearly figures are counted up to %s hours, %s for each one looked at.", count(floor.HoursAYear), figures(y.Scale)), "")
+			p.text(fmt.Sprintf("A sample: yearly figures are counted up to %s hours, %s for each one looked at.", count(ranges.HoursAYear), figures(y.Scale)), "")
 		}
 	}
 	l := r.Case.Limits

@@ -3,6 +3,7 @@ package report
 import (
 	"io"
 
+	"evenkeel/study/ranges"
 	"evenkeel/study/size"
 )
 
@@ -118,7 +119,7 @@ func sizeJSON(w io.Writer, s *Sized) error {
 	out := sizeSummary{
 		Caution: Caution, Case: plan.Case.Name, CaseHash: plan.Case.Hash, Project: project.Name, ProjectNote: project.Note, ProjectHash: project.Hash,
 		Kind: project.Kind.String(), Promised: project.Promised(), Currency: plan.Case.Currency, SizeUnit: project.Kind.SizeUnit(),
-		HoursLooked: len(s.Hours), HoursOfCase: plan.Case.Hours(), FirstHour: s.Hours[0], LastHour: s.Hours[len(s.Hours)-1], HoursAYear: size.YearH,
+		HoursLooked: len(s.Hours), HoursOfCase: plan.Case.Hours(), FirstHour: s.Hours[0], LastHour: s.Hours[len(s.Hours)-1], HoursAYear: ranges.HoursAYear,
 		AskedGap: number{s.Gap, decShare}, StartSpreadH: number{s.StartSpreadH, decS}, Pay: s.Rule.String(), Designs: len(plan.Points), Cases: plan.Cases(),
 		CostBare: money(s.Years[0][0].Cost), ShortBare: number{s.Years[0][0].ShortH, 1},
 		Best: sizeBest{designOf(s.Study, size.Owner), designOf(s.Study, size.System)},

@@ -7,6 +7,7 @@ import (
 	"strings"
 
 	"evenkeel/fleet"
+	"evenkeel/study/ranges"
 	"evenkeel/study/size"
 )
 
@@ -22,8 +23,8 @@ func round(v float64) string {
 func conditions(s *size.Study) string {
 	if n, all := len(s.Hours), s.Plan.Case.Hours(); n < all {
 		return fmt.Sprintf("%s of %s, counted up to a year", count(n), hoursOf(all))
-	} else if n != size.YearH {
-		return fmt.Sprintf("%s, counted to a year of %s", hoursOf(n), count(size.YearH))
+	} else if n != ranges.HoursAYear {
+		return fmt.Sprintf("%s, counted to a year of %s", hoursOf(n), count(ranges.HoursAYear))
 	}
 	return hoursOf(len(s.Hours))
 }

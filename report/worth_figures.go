@@ -13,6 +13,7 @@ import (
 	"gonum.org/v1/plot/vg/draw"
 
 	"evenkeel/solve"
+	"evenkeel/study/ranges"
 	"evenkeel/study/worth"
 )
 
@@ -89,7 +90,7 @@ func worthPricesFigure(r *worth.Result, o WorthOptions) figure {
 			for k := range r.Records {
 				v[k] = finite(q.of(&r.Records[k].Without.Way(way).Prices))
 			}
-			top, low = max(top, worth.Quantile(v, pricesShown)), min(low, worth.Quantile(v, 1-pricesShown))
+			top, low = max(top, ranges.Quantile(v, pricesShown)), min(low, ranges.Quantile(v, 1-pricesShown))
 			slices.Sort(v)
 			slices.Reverse(v)
 			curves = append(curves, curve{values: v, style: wayStyles[way]})

@@ -14,6 +14,7 @@ import (
 	"evenkeel/fleet"
 	"evenkeel/fleet/invent"
 	"evenkeel/solve"
+	"evenkeel/study/ranges"
 	"evenkeel/study/worth"
 )
 
@@ -38,7 +39,7 @@ func worthStudy(t *testing.T, product bool) (*worth.Result, *worth.Exchange) {
 		if plan.Product, found = fleet.ReadProduct(path, c); plan.Product == nil {
 			t.Fatal(found)
 		}
-		plan.VolumesMW, plan.ActivationsS = worth.Even(0, 25, 3), []float64{2}
+		plan.VolumesMW, plan.ActivationsS = ranges.Range{To: 25, N: 3}.Values(), []float64{2}
 	}
 	s, err := plan.Prepare()
 	if err != nil {

@@ -9,6 +9,7 @@ import (
 	"strings"
 
 	"evenkeel/fleet"
+	"evenkeel/study/ranges"
 	"evenkeel/study/worth"
 )
 
@@ -47,7 +48,7 @@ func lookedAt(r *worth.Result, o WorthOptions) string {
 	first, last := r.Records[0].Time, r.Records[len(r.Records)-1].Time
 	s := fmt.Sprintf("%s, %s to %s UTC", hoursOf(len(r.Records)), minute(first), minute(last))
 	if o.Sample {
-		s += "; a sample, counted up to a year of 8,760 hours"
+		s += "; a sample, counted up to a year of " + count(ranges.HoursAYear) + " hours"
 	}
 	return s
 }
@@ -259,7 +260,7 @@ func (p *worthPage) product() {
 	}
 	first := p.r.Prices[2+len(p.c.Shapes)-1]
 	p.fact("First MW", fmt.Sprintf("worth %s a year at the hours' marginal prices, %s at hull prices, before its own pay",
-		p.money(8760*first.Mean[0][worth.Marginal]), amount(8760*first.Mean[0][worth.Hull])))
+		p.money(ranges.HoursAYear*first.Mean[0][worth.Marginal]), amount(ranges.HoursAYear*first.Mean[0][worth.Hull])))
 	p.fact("Held", heldWhen(r))
 	for k := 1; k < len(r.VolumesMW); k++ {
 		if a, b := &r.Points[k-1], &r.Points[k]; b.Net < a.Net-p.w.Gap*math.Abs(a.Cost) {
@@ -325,7 +326,7 @@ func (p *worthPage) displaced() {
 		if p.c.Resources[d.Resource].Kind.Machine() {
 			on = [2]string{grouped(d.OnH[0], 0), grouped(d.OnH[1], 0)}
 		}
-		p.line("  %s %10s %10s  %10s %10s", padRight(p.c.Resources[d.Resource].Name, 31), fixed(d.ResponseMWh[0]/8760, 2), fixed(d.ResponseMWh[1]/8760, 2), on[0], on[1])
+		p.line("  %s %10s %10s  %10s %10s", padRight(p.c.Resources[d.Resource].Name, 31), fixed(d.ResponseMWh[0]/ranges.HoursAYear, 2), fixed(d.ResponseMWh[1]/ranges.HoursAYear, 2), on[0], on[1])
 	}
 }
 

@@ -13,21 +13,20 @@ import (
 	"evenkeel/limits/dynamic"
 )
 
+// ClosedTolHz is by how much a closed-loop simulation may pass a limit, in Hz or Hz/s: its own error,
+// see dynamic.
+const ClosedTolHz = 1e-3
+
 const (
 	mostMends     = 8
-	closedTolHz   = 1e-3 // the simulation's own error, see dynamic
 	closedTolStep = 2e-5
 	closedStill   = 2e-5 // Hz/s: less than a millihertz until the slowest dashpot has settled
 )
 
 // prepareClosed notes which responses follow a model.
 func (s *Solver) prepareClosed() {
-	s.models = make([]*dynamic.Model, len(s.c.Shapes))
-	for i := range s.c.Models {
-		m := &s.c.Models[i]
-		s.models[m.Shape] = m.Model
-		s.closed = true
-	}
+	s.models = s.c.ModelOf()
+	s.closed = len(s.c.Models) > 0
 	for i := range s.c.Resources {
 		s.closed = s.closed || s.c.Resources[i].SyntheticS > 0
 	}
@@ -100,7 +99,7 @@ func (s *Solver) simulate(sim *dynamic.Simulator, on *Online, p *formulate.Probl
 	} else {
 		out.Closed = Closed{MarginHz: math.Inf(1)}
 	}
-	opt := s.closedOptions()
+	opt := s.ClosedOptions()
 	opt.SteadyHz = l.SteadyHz
 	calm := make([]bool, len(losses))
 	t.calm[side] = calm
@@ -139,8 +138,8 @@ func (s *Solver) simulate(sim *dynamic.Simulator, on *Online, p *formulate.Probl
 			out.Closed.note(&w, losses[c.index].Name, l)
 		}
 		f := failure{loss: c.trip, sys: &on.Sys, over: over, nadirS: w.peakS, rocofS: w.rocofS,
-			early:  w.rocof > l.MaxHzPerS+closedTolHz || w.peak > l.NadirHz+closedTolHz,
-			steady: w.steady > l.SteadyHz+closedTolHz}
+			early:  w.rocof > l.MaxHzPerS+ClosedTolHz || w.peak > l.NadirHz+ClosedTolHz,
+			steady: w.steady > l.SteadyHz+ClosedTolHz}
 		if f.early || f.steady {
 			return &f
 		}
@@ -186,7 +185,8 @@ func (s *Solver) trip(on *Online, p *formulate.Problem, l *formulate.Loss) dynam
 	return d
 }
 
-func (s *Solver) closedOptions() dynamic.Options {
+// ClosedOptions are those with which mixes are proven in closed loop.
+func (s *Solver) ClosedOptions() dynamic.Options {
 	l := s.c.Limits
 	return dynamic.Options{WindowS: l.WindowS, SteadyByS: l.SteadyByS, UntilS: l.SteadyUntilS, TolHz: closedTolStep, StillHzPerS: closedStill, SteadyHz: l.SteadyHz}
 }
@@ -223,7 +223,7 @@ func (s *Solver) mend(sim *dynamic.Simulator, st *state, shapes []limits.Shape, 
 			samples[i][j] = shapes[i].At(float64(j) * mendSampleS)
 		}
 	}
-	opt := s.closedOptions()
+	opt := s.ClosedOptions()
 	opt.Record, opt.UntilS = true, until
 	opt.EndS = until
 	if !f.steady { // what comes after the nadir is not looked at

@@ -93,7 +93,7 @@ func provenEverywhere(t *testing.T, c *fleet.Case, every int) (mended int) {
 				}
 				all++
 				o, a := sim.Run(&on.Sys, []dynamic.Loss{d}, opt), c.Above
-				if tol := 2 * closedTolHz; o.RiseHzPerS > a.MaxHzPerS+tol || o.PeakHz > a.NadirHz+tol || o.SteadyOverHz > a.SteadyHz+tol {
+				if tol := 2 * ClosedTolHz; o.RiseHzPerS > a.MaxHzPerS+tol || o.PeakHz > a.NadirHz+tol || o.SteadyOverHz > a.SteadyHz+tol {
 					t.Errorf("hour %d, %s (%.1f MW): upwards RoCoF %.4f, peak %.4f, steady %.4f", i, loss.Name, d.MW, o.RiseHzPerS, o.PeakHz, o.SteadyOverHz)
 				}
 				continue
@@ -103,7 +103,7 @@ func provenEverywhere(t *testing.T, c *fleet.Case, every int) (mended int) {
 			}
 			all++
 			o := sim.Run(&on.Sys, []dynamic.Loss{d}, opt)
-			const tol = 2 * closedTolHz // of the proof and of this
+			const tol = 2 * ClosedTolHz // of the proof and of this
 			if o.RoCoFHzPerS > l.MaxHzPerS+tol || o.NadirHz > l.NadirHz+tol || o.SteadyHz > l.SteadyHz+tol {
 				t.Errorf("hour %d, %s (%.1f MW): RoCoF %.4f, nadir %.4f, steady %.4f", i, loss.Name, d.MW, o.RoCoFHzPerS, o.NadirHz, o.SteadyHz)
 			}

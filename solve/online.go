@@ -41,10 +41,7 @@ func NewOnline(c *fleet.Case, h *fleet.Hour, d []Dispatch, unservedMW float64) *
 	if h.DemandMW > 0 {
 		sys.DampingPctPerHz = 100 * h.DampingMWPerHz / h.DemandMW
 	}
-	models := make([]*dynamic.Model, len(c.Shapes))
-	for i := range c.Models {
-		models[c.Models[i].Shape] = c.Models[i].Model
-	}
+	models := c.ModelOf()
 	o.promise, o.promiseDown = make([]int, len(c.Shapes)), make([]int, len(c.Shapes))
 	for i := range o.promise {
 		o.promise[i], o.promiseDown[i] = -1, -1

@@ -135,3 +135,16 @@ type Effort struct {
 	Pivots int
 	Rows   int // frequency rows found
 }
+
+// Met tells whether the mix of an hour covers every limit and the whole load, as its rows see it.
+func (h *Hour) Met() bool {
+	if h.UnservedMW > 0 || h.ExcessMW > 0 || h.FloorShortMWs > 0 {
+		return false
+	}
+	for k := range h.Limits {
+		if h.Limits[k].ShortMW > 0 || h.Above != nil && h.Above.Limits[k].ShortMW > 0 {
+			return false
+		}
+	}
+	return true
+}

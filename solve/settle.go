@@ -12,8 +12,7 @@ import (
 // Marginal prices are the duals of the dispatch, its commitment held. Convex hull prices are the
 // duals of the relaxation in which every resource may take any mean of its operating points (the
 // Dantzig–Wolfe master): of all prices they leave the least uplift, what they pay for surplus counted
-// in. In both, every possible loss
-// has rows of its own: what is lost counts in them by its output, which it pays for, and is paid
+// in. In both, every possible loss has rows of its own: what is lost counts in them by its output, which it pays for, and is paid
 // nothing for the inertia and the response that go with it. In the convex hull a fraction of a
 // machine is a fraction of a loss, and identical units are lost at the mean of all of them, on or
 // off; so its price of a smaller loss is low, and none of it depends on how the optimiser bounds the

@@ -12,6 +12,7 @@ import (
 
 	"evenkeel/fleet"
 	"evenkeel/report"
+	"evenkeel/study/ranges"
 	"evenkeel/study/size"
 	"evenkeel/study/work"
 )
@@ -64,8 +65,8 @@ func sizeUp(cmd *cobra.Command, path string, f *sizeFlags) error {
 	if err != nil {
 		return err
 	}
-	p, err := readProject(cmd, f.project, c, f.quiet)
-	if err != nil {
+	p, found := fleet.ReadProject(f.project, c)
+	if err := judged(cmd, f.project, found, p != nil, f.quiet); err != nil {
 		return err
 	}
 	hours, err := f.list(c)
@@ -89,7 +90,7 @@ func sizeUp(cmd *cobra.Command, path string, f *sizeFlags) error {
 	if err != nil {
 		return err
 	}
-	study := &report.Sized{Gap: f.gap, StartSpreadH: f.startSpread, Study: size.New(plan, rule, hours, items.Out), Other: size.New(plan, size.Hull-rule, hours, items.Out)}
+	study := &report.Sized{Gap: f.gap, StartSpreadH: f.startSpread, Study: size.New(plan, rule, hours, items.Out), Other: size.New(plan, rule.Other(), hours, items.Out)}
 	if err := report.WriteSize(f.out, study); err != nil {
 		return err
 	}
@@ -105,20 +106,6 @@ func sizeUp(cmd *cobra.Command, path string, f *sizeFlags) error {
 		return exit{code: exitShort}
 	}
 	return nil
-}
-
-// readProject vets a project for a command that uses it.
-func readProject(cmd *cobra.Command, path string, c *fleet.Case, quiet bool) (*fleet.Project, error) {
-	p, found := fleet.ReadProject(path, c)
-	if p == nil || !quiet {
-		for _, x := range found {
-			fmt.Fprintln(cmd.ErrOrStderr(), x)
-		}
-	}
-	if p == nil {
-		return nil, bad("%s: %s; nothing was written", path, count(len(found.Errors()), "error"))
-	}
-	return p, nil
 }
 
 // grid reads what to try.
@@ -163,14 +150,12 @@ func (f *sizeFlags) grid(c *fleet.Case, p *fleet.Project) (size.Grid, error) {
 func sizeList(text string) ([]float64, error) {
 	const most = 100
 	fault := bad("--mw is %q, want A:B:N with 0 ≤ A ≤ B, B above 0, and N from 1 to %d, or a list of numbers above 0", text, most)
-	if parts := strings.Split(text, ":"); len(parts) == 3 {
-		a, errA := strconv.ParseFloat(parts[0], 64)
-		b, okB := above0(parts[1])
-		n, errN := strconv.Atoi(parts[2])
-		if errA != nil || errN != nil || !okB || !(a >= 0 && a <= b) || n < 1 || n > most || n == 1 && a != b {
+	if strings.Count(text, ":") == 2 {
+		r, ok := ranges.Parse(text, most)
+		if !ok || r.From < 0 || r.To == 0 || r.N == 1 && r.From != r.To {
 			return nil, fault
 		}
-		return size.Spread(a, b, n), nil
+		return size.Spread(r), nil
 	}
 	var out []float64
 	for _, word := range split(text) {

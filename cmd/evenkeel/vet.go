@@ -42,19 +42,24 @@ func vetCommand() *cobra.Command {
 // read vets a case for a command that uses it: faults end it, warnings go to standard error.
 func read(cmd *cobra.Command, path string, quiet bool) (*fleet.Case, error) {
 	c, found := fleet.Read(path)
-	errs := found.Errors()
-	if c == nil || len(errs) > 0 {
-		for _, f := range found {
-			fmt.Fprintln(cmd.ErrOrStderr(), f)
-		}
-		return nil, bad("%s: %s; nothing was written", path, count(len(errs), "error"))
-	}
-	if !quiet {
-		for _, f := range found {
-			fmt.Fprintln(cmd.ErrOrStderr(), f)
-		}
+	if err := judged(cmd, path, found, c != nil, quiet); err != nil {
+		return nil, err
 	}
 	return c, nil
+}
+
+// judged says what was found in a file that a command uses: faults end it, warnings go to standard
+// error unless it is to be quiet.
+func judged(cmd *cobra.Command, path string, found fleet.Findings, usable, quiet bool) error {
+	if !usable || !quiet {
+		for _, f := range found {
+			fmt.Fprintln(cmd.ErrOrStderr(), f)
+		}
+	}
+	if !usable {
+		return bad("%s: %s; nothing was written", path, count(len(found.Errors()), "error"))
+	}
+	return nil
 }
 
 func count(n int, what string) string {

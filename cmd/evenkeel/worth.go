@@ -3,8 +3,6 @@ package main
 import (
 	"context"
 	"fmt"
-
-	"slices"
 	"strconv"
 	"strings"
 	"time"
@@ -13,6 +11,7 @@ import (
 
 	"evenkeel/fleet"
 	"evenkeel/report"
+	"evenkeel/study/ranges"
 	"evenkeel/study/work"
 	"evenkeel/study/worth"
 )
@@ -75,11 +74,8 @@ func runWorth(cmd *cobra.Command, path string, f worthFlags) error {
 	if f.product != "" {
 		var found fleet.Findings
 		plan.Product, found = fleet.ReadProduct(f.product, c)
-		for _, x := range found {
-			fmt.Fprintln(cmd.ErrOrStderr(), x)
-		}
-		if plan.Product == nil {
-			return bad("%s: %s; nothing was written", f.product, count(len(found.Errors()), "error"))
+		if err := judged(cmd, f.product, found, plan.Product != nil, f.quiet); err != nil {
+			return err
 		}
 		hash = plan.Product.Hash
 		if plan.VolumesMW, err = volumes(f.volumes, plan.Product.MostMW()); err != nil {
@@ -138,22 +134,14 @@ func runWorth(cmd *cobra.Command, path string, f worthFlags) error {
 
 // volumes reads A:B:N; without it none and ten volumes up to the most there is.
 func volumes(text string, most float64) ([]float64, error) {
-	a, b, n := 0.0, most, 11
+	r := ranges.Range{To: most, N: 11}
 	if text != "" {
-		parts := strings.Split(text, ":")
-		fault := bad("--volumes is %q, want A:B:N with A 0, B above it and at most %g MW (the product's cap), N from 2 to 100", text, most)
-		if len(parts) != 3 {
-			return nil, fault
-		}
-		var errs [3]error
-		a, errs[0] = strconv.ParseFloat(parts[0], 64)
-		b, errs[1] = strconv.ParseFloat(parts[1], 64)
-		n, errs[2] = strconv.Atoi(parts[2])
-		if slices.ContainsFunc(errs[:], func(err error) bool { return err != nil }) || a != 0 || !(b > 0 && b <= most) || n < 2 || n > 100 {
-			return nil, fault
+		var ok bool
+		if r, ok = ranges.Parse(text, 100); !ok || r.From != 0 || !(r.To > 0 && r.To <= most) || r.N < 2 {
+			return nil, bad("--volumes is %q, want A:B:N with A 0, B above it and at most %g MW (the product's cap), N from 2 to 100", text, most)
 		}
 	}
-	return worth.Even(a, b, n), nil
+	return r.Values(), nil
 }
 
 // heldMW reads SHAPE=MW.

@@ -10,6 +10,7 @@ import (
 
 	"evenkeel/fleet"
 	"evenkeel/solve"
+	"evenkeel/study/ranges"
 )
 
 // DefaultCells is how many losses and responses a chart has unless said otherwise.
@@ -20,39 +21,22 @@ const (
 	mostBracket = 24
 )
 
-// Range is N values from From to To, evenly spread.
-type Range struct {
-	From, To float64
-	N        int
-}
-
-// At gives value i.
-func (r Range) At(i int) float64 {
-	if r.N < 2 {
-		return r.To
-	}
-	return r.From + (r.To-r.From)*float64(i)/float64(r.N-1)
-}
-
-// set tells whether the range was asked for.
-func (r Range) set() bool { return r.N > 0 }
-
 // Axis is one chart: the response held with one shape against the loss.
 type Axis struct {
 	Shape int
-	Held  Range // N = 0: by default
+	Held  ranges.Range // N = 0: by default
 }
 
 // Ask is what a study is asked for.
 type Ask struct {
 	Hours    []int // of the case; none: the charts alone
 	Options  solve.Options
-	Loss     Range     // MW; N = 0: by default
-	Axes     []Axis    // none: one, of the shape held most
-	HeldMW   []float64 // of the shapes that are no axis, one a shape; NaN: by default
-	LoadMW   float64   // in the charts; NaN: by default
-	Brackets int       // of the largest loss, in the rule by its size
-	Policies []float64 // further rules, MW·s for all hours
+	Loss     ranges.Range // MW; N = 0: by default
+	Axes     []Axis       // none: one, of the shape held most
+	HeldMW   []float64    // of the shapes that are no axis, one a shape; NaN: by default
+	LoadMW   float64      // in the charts; NaN: by default
+	Brackets int          // of the largest loss, in the rule by its size
+	Policies []float64    // further rules, MW·s for all hours
 }
 
 // Words are what a user asks for in flags.
@@ -88,7 +72,7 @@ func (w Words) Read(c *fleet.Case) (*Ask, error) {
 		return i
 	}
 	if w.Loss != "" {
-		r, ok := readRange(w.Loss)
+		r, ok := ranges.Parse(w.Loss, mostCells)
 		if !ok || !(r.From > 0) {
 			fault("--loss is %q, want A:B:N in MW with 0 < A ≤ B and N from 1 to %d", w.Loss, mostCells)
 		}
@@ -115,7 +99,7 @@ func (w Words) Read(c *fleet.Case) (*Ask, error) {
 		seen[name] = true
 		axis := slices.IndexFunc(a.Axes, func(x Axis) bool { return x.Shape == i })
 		if strings.Contains(value, ":") {
-			r, ok := readRange(value)
+			r, ok := ranges.Parse(value, mostCells)
 			switch {
 			case !ok || !(r.From >= 0):
 				fault("--held is %q, want SHAPE=A:B:N in MW with 0 ≤ A ≤ B and N from 1 to %d", word, mostCells)
@@ -151,17 +135,4 @@ func (w Words) Read(c *fleet.Case) (*Ask, error) {
 		}
 	}
 	return a, errors.Join(faults...)
-}
-
-// readRange reads A:B:N.
-func readRange(text string) (Range, bool) {
-	parts := strings.Split(text, ":")
-	if len(parts) != 3 {
-		return Range{}, false
-	}
-	from, err1 := strconv.ParseFloat(parts[0], 64)
-	to, err2 := strconv.ParseFloat(parts[1], 64)
-	n, err3 := strconv.Atoi(parts[2])
-	ok := err1 == nil && err2 == nil && err3 == nil && to >= from && !math.IsInf(to, 0) && n >= 1 && n <= mostCells
-	return Range{from, to, n}, ok
 }

@@ -6,6 +6,7 @@ import (
 	"evenkeel/fleet"
 	"evenkeel/limits"
 	"evenkeel/solve"
+	"evenkeel/study/ranges"
 )
 
 // Cell is one field of a chart: a loss, and the response held of the chart's shape, both as they
@@ -27,8 +28,8 @@ type Cell struct {
 // Chart is what all cells of one axis share.
 type Chart struct {
 	Shape  int
-	Loss   Range
-	Held   Range
+	Loss   ranges.Range
+	Held   ranges.Range
 	Others []float64 // MW held of each shape; that of Shape is not used
 	LoadMW float64
 	Cells  []Cell // loss by loss, each with every response

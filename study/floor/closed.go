@@ -19,10 +19,7 @@ type plant struct {
 // their mean caps over the hours.
 func plants(c *fleet.Case, hours []int) []plant {
 	out := make([]plant, len(c.Shapes))
-	models := make([]*dynamic.Model, len(c.Shapes))
-	for i := range c.Models {
-		models[c.Models[i].Shape] = c.Models[i].Model
-	}
+	models := c.ModelOf()
 	for i := range c.Resources {
 		r := &c.Resources[i]
 		if r.Response.Shape < 0 {

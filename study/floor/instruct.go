@@ -5,6 +5,7 @@ import (
 	"slices"
 
 	"evenkeel/limits"
+	"evenkeel/study/ranges"
 )
 
 // Instruction is a line of an operating instruction: with HeldMW of a response held or more, as far
@@ -35,8 +36,8 @@ func (r *Result) Instructions(chart int) []Instruction {
 		for _, h := range r.Year.Hours {
 			lost = append(lost, h.Mix.LargestMW)
 		}
-		most := quantileOf(lost, 1)
-		losses = []float64{most / 4, most / 2, 3 * most / 4, quantileOf(lost, 0.5), quantileOf(lost, 0.9), most}
+		most := ranges.Quantile(lost, 1)
+		losses = []float64{most / 4, most / 2, 3 * most / 4, ranges.Quantile(lost, 0.5), ranges.Quantile(lost, 0.9), most}
 		slices.Sort(losses)
 	} else {
 		losses = []float64{k.Loss.At(k.Loss.N / 4), k.Loss.At(k.Loss.N / 2), k.Loss.At(3 * k.Loss.N / 4), k.Loss.To}

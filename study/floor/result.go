@@ -5,11 +5,9 @@ import (
 
 	"evenkeel/fleet"
 	"evenkeel/limits"
+	"evenkeel/study/ranges"
 	"evenkeel/study/work"
 )
-
-// HoursAYear is what yearly figures are counted up to.
-const HoursAYear = 8760
 
 // Result is what a study has found.
 type Result struct {
@@ -99,7 +97,7 @@ func (s *Study) Result(items *work.Items[Item]) *Result {
 func (s *Study) year(kept [][]Kept) *Year {
 	y := &Year{Hours: s.hours, Scale: 1, MostGapAt: -1}
 	if len(s.hours) < s.c.Hours() {
-		y.Scale = HoursAYear / float64(len(s.hours))
+		y.Scale = ranges.HoursAYear / float64(len(s.hours))
 	}
 	for i, h := range s.hours {
 		if h.Short {

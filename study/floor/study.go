@@ -7,6 +7,7 @@ import (
 	"sync"
 
 	"evenkeel/fleet"
+	"evenkeel/study/ranges"
 	"evenkeel/study/work"
 )
 
@@ -38,20 +39,13 @@ type Study struct {
 // New prepares a study.
 func New(c *fleet.Case, ask *Ask) *Study {
 	s := &Study{c: c, ask: ask, all: newSolvers(c, ask.Options), hours: make([]*Hour, len(ask.Hours)), left: len(ask.Hours), ready: make(chan struct{})}
-	hours := ask.Hours
-	if len(hours) == 0 { // the case's, for means
-		hours = make([]int, c.Hours())
-		for i := range hours {
-			hours[i] = i
-		}
-	}
-	s.plants = plants(c, hours)
+	s.plants = plants(c, s.lookedAt())
 	return s
 }
 
 // losses is how many losses a chart has.
 func (s *Study) losses() int {
-	if s.ask.Loss.set() {
+	if s.ask.Loss.N > 0 {
 		return s.ask.Loss.N
 	}
 	return DefaultCells
@@ -123,18 +117,14 @@ func (s *Study) settle() {
 		axes = []Axis{{Shape: s.mostHeld()}}
 	}
 	loss := s.ask.Loss
-	if !loss.set() {
+	if loss.N == 0 {
 		step := niceStep(1.1 * s.largestMW() / DefaultCells)
-		loss = Range{step, step * DefaultCells, DefaultCells}
+		loss = ranges.Range{From: step, To: step * DefaultCells, N: DefaultCells}
 	}
 	load := s.ask.LoadMW
 	if math.IsNaN(load) {
 		load = math.Inf(1) // the least load damps least: what holds with it holds with more
-		hours := s.ask.Hours
-		if len(hours) == 0 {
-			hours = every(s.c.Hours())
-		}
-		for _, h := range hours {
+		for _, h := range s.lookedAt() {
 			load = min(load, s.c.Load.DemandMW.At(h))
 		}
 	}
@@ -146,7 +136,7 @@ func (s *Study) settle() {
 	}
 	for _, a := range axes {
 		held := a.Held
-		if !held.set() {
+		if held.N == 0 {
 			top := 0.0
 			for _, h := range s.hours {
 				top = max(top, h.Held[a.Shape])
@@ -154,7 +144,7 @@ func (s *Study) settle() {
 			if len(s.hours) == 0 || top < 1 {
 				top = s.plants[a.Shape].capMW
 			}
-			held = Range{0, niceStep(max(top, 1)/(DefaultCells-1)) * (DefaultCells - 1), DefaultCells}
+			held = ranges.Range{To: niceStep(max(top, 1)/(DefaultCells-1)) * (DefaultCells - 1), N: DefaultCells}
 		}
 		s.charts = append(s.charts, Chart{Shape: a.Shape, Loss: loss, Held: held, Others: others, LoadMW: load})
 	}
@@ -200,22 +190,13 @@ func (s *Study) usualMW(shape int) float64 {
 	for _, h := range s.hours {
 		lost = append(lost, h.Mix.LargestMW)
 	}
-	from := quantileOf(lost, 0.9)
+	from := ranges.Quantile(lost, 0.9)
 	for _, h := range s.hours {
 		if h.Mix.LargestMW >= from {
 			held = append(held, h.Held[shape])
 		}
 	}
-	return quantileOf(held, 0.5)
-}
-
-// quantileOf is the least value that a share of all does not pass; 0 of none. It sorts the values.
-func quantileOf(values []float64, share float64) float64 {
-	if len(values) == 0 {
-		return 0
-	}
-	slices.Sort(values)
-	return values[min(max(int(math.Ceil(share*float64(len(values))))-1, 0), len(values)-1)]
+	return ranges.Quantile(held, 0.5)
 }
 
 // largestMW is the largest loss of infeed of the hours' mixes; without hours the largest there can be.
@@ -246,9 +227,12 @@ func (s *Study) largestMW() float64 {
 	return max(most, 1)
 }
 
-// every lists the numbers under n.
-func every(n int) []int {
-	list := make([]int, n)
+// lookedAt are the hours asked for; for charts alone all of the case, whose means and extremes count.
+func (s *Study) lookedAt() []int {
+	if len(s.ask.Hours) > 0 {
+		return s.ask.Hours
+	}
+	list := make([]int, s.c.Hours())
 	for i := range list {
 		list[i] = i
 	}

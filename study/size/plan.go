@@ -8,6 +8,7 @@ import (
 	"strconv"
 
 	"evenkeel/fleet"
+	"evenkeel/study/ranges"
 )
 
 // Grid is what to try: every size with every energy and every activation time.
@@ -186,9 +187,9 @@ func ascending(v []float64) []float64 {
 
 // MostMW is a size beyond which the case can hardly use more: what covers its largest loss.
 //
-// For response, the loss itself; wind and sun can be turned down and count as no such loss. For inertia, what keeps the rate of change after that loss
-// within its limit alone, E = f0·P/(2·RoCoF) (REFERENCES: ENTSO-E 2016, from memory), in whole
-// machines. For a wind farm, what its share of output gives at most.
+// For response, the loss itself; wind and sun can be turned down and count as no such loss. For
+// inertia, what keeps the rate of change after that loss within its limit alone, E = f0·P/(2·RoCoF)
+// (ENTSO-E, Frequency stability evaluation criteria, 2016, from memory), in whole machines. For a wind farm, what its share of output gives at most.
 func MostMW(c *fleet.Case, p *fleet.Project) float64 {
 	most := 0.0
 	for i := range c.Resources {
@@ -255,14 +256,11 @@ func tidy(v float64) float64 {
 	return out
 }
 
-// Spread gives n numbers from a to b at equal steps, both among them.
-func Spread(a, b float64, n int) []float64 {
-	if n == 1 {
-		return []float64{b}
-	}
-	out := make([]float64, n)
+// Spread gives the values of a range without what is left of rounding.
+func Spread(r ranges.Range) []float64 {
+	out := r.Values()
 	for i := range out {
-		out[i] = tidy(a + (b-a)*float64(i)/float64(n-1))
+		out[i] = tidy(out[i])
 	}
 	return out
 }

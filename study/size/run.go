@@ -52,6 +52,9 @@ const (
 
 func (r Rule) String() string { return [...]string{"marginal", "hull"}[r] }
 
+// Other is the other rule.
+func (r Rule) Other() Rule { return Hull - r }
+
 // Words name the rule in text.
 func (r Rule) Words() string {
 	return [...]string{"marginal prices, the commitment held", "convex hull prices"}[r]

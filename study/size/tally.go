@@ -2,10 +2,8 @@ package size
 
 import (
 	"evenkeel/fleet"
+	"evenkeel/study/ranges"
 )
-
-// YearH is the hours that results are counted up to.
-const YearH = 8760
 
 // Year is what a rung comes to in a year.
 type Year struct {
@@ -24,7 +22,7 @@ type Year struct {
 
 // Years sums the hours of each rung up to a year. hours holds one result of Climber.Hour each.
 func (plan *Plan) Years(hours [][][]Rung) [][]Year {
-	up := YearH / float64(len(hours))
+	up := ranges.HoursAYear / float64(len(hours))
 	out := make([][]Year, len(plan.Ladders))
 	for l := range plan.Ladders {
 		out[l] = make([]Year, len(plan.Ladders[l].Rungs))

@@ -216,7 +216,11 @@ func BenchmarkTenPoints(b *testing.B) {
 	opt := solve.Options{Gap: 2e-4}
 	rungs, swept := rungsOf(b, 0, 4, 8, 12, 16, 20, 24, 28, 32, 36)
 	ladder, one := NewLadder(rungs, swept, opt), solve.New(rungs[0], opt)
-	var ten, single time.Duration
+	var ten, single, cold time.Duration
+	var alone []*solve.Solver
+	for _, r := range rungs {
+		alone = append(alone, solve.New(r, opt))
+	}
 	for b.Loop() {
 		for i := 0; i < rungs[0].Hours(); i += 29 {
 			start := time.Now()
@@ -229,7 +233,15 @@ func BenchmarkTenPoints(b *testing.B) {
 				b.Fatal(err)
 			}
 			single += time.Since(start)
+			start = time.Now()
+			for k, s := range alone {
+				if _, err := s.Hour(context.Background(), rungs[k].Hour(i, fleet.HourOptions{})); err != nil {
+					b.Fatal(err)
+				}
+			}
+			cold += time.Since(start)
 		}
 	}
 	b.ReportMetric(ten.Seconds()/single.Seconds(), "solves")
+	b.ReportMetric(cold.Seconds()/single.Seconds(), "solves-one-by-one")
 }

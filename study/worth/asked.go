@@ -7,6 +7,7 @@ import (
 
 	"evenkeel/fleet"
 	"evenkeel/limits"
+	"evenkeel/study/ranges"
 )
 
 // Asked says which exchange rates are wanted. The zero value asks for the usual ones.
@@ -127,7 +128,7 @@ func (x *Exchange) Levels(records []Record) {
 		}
 		v := valuesOf(records, of)
 		for _, share := range shares {
-			if q := roundTo3(Quantile(v, share)); q > 0 && !slices.Contains(list, q) {
+			if q := roundTo3(ranges.Quantile(v, share)); q > 0 && !slices.Contains(list, q) {
 				list = append(list, q)
 			}
 		}
@@ -142,7 +143,7 @@ func (x *Exchange) Middle() float64 {
 	if len(x.LossMW) == 0 || len(x.InertiaMWs) == 0 {
 		return 0
 	}
-	return Quantile(x.LossMW, 0.5)
+	return ranges.Quantile(x.LossMW, 0.5)
 }
 
 func left(rec *Record) float64 { return rec.InertiaLeftMWs }
@@ -153,13 +154,6 @@ func valuesOf(records []Record, of func(rec *Record) float64) []float64 {
 		v[i] = of(&records[i])
 	}
 	return v
-}
-
-// Quantile is the value that a share of values lies at or below (nearest rank, common practice).
-func Quantile(values []float64, share float64) float64 {
-	v := slices.Clone(values)
-	slices.Sort(v)
-	return v[min(max(int(math.Ceil(share*float64(len(v))))-1, 0), len(v)-1)]
 }
 
 // roundTo3 rounds to three figures.
@@ -174,7 +168,7 @@ func roundTo3(v float64) float64 {
 // Course is the exchange at one loss over many kinetic energies, for a figure.
 func (x *Exchange) Course(lossMW float64, records []Record, n int) []Cell {
 	v := valuesOf(records, left)
-	lo, hi := Quantile(v, 0), Quantile(v, 1)
+	lo, hi := ranges.Quantile(v, 0), ranges.Quantile(v, 1)
 	for _, e := range x.InertiaMWs {
 		lo, hi = min(lo, e), max(hi, e)
 	}

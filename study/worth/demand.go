@@ -1,6 +1,7 @@
 package worth
 
 import (
+	"cmp"
 	"math"
 	"slices"
 )
@@ -44,14 +45,6 @@ func (r *Result) Demand() []Demand {
 // Speeds gives the points of the last volume by activation time, the fastest first, the product's own among them.
 func (r *Result) Speeds() []YearPoint {
 	list := slices.Clone(r.Points[len(r.VolumesMW)-1:])
-	slices.SortStableFunc(list, func(a, b YearPoint) int {
-		switch {
-		case a.ActivationS < b.ActivationS:
-			return -1
-		case a.ActivationS > b.ActivationS:
-			return 1
-		}
-		return 0
-	})
+	slices.SortStableFunc(list, func(a, b YearPoint) int { return cmp.Compare(a.ActivationS, b.ActivationS) })
 	return list
 }

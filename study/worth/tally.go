@@ -5,9 +5,8 @@ import (
 	"slices"
 
 	"evenkeel/solve"
+	"evenkeel/study/ranges"
 )
-
-const yearH = 8760
 
 // Result is a study in numbers. Sums over the hours are counted up to a year of 8,760 hours.
 type Result struct {
@@ -101,7 +100,7 @@ type Displaced struct {
 
 // Tally sums the hours up.
 func (s *Study) Tally(records []Record) *Result {
-	r := &Result{Study: s, Records: records, PerYear: yearH / float64(len(records))}
+	r := &Result{Study: s, Records: records, PerYear: ranges.HoursAYear / float64(len(records))}
 	mixes := 1
 	if s.Product != nil {
 		mixes = 2

@@ -211,13 +211,3 @@ func wayOf(s *solve.Settled) Way {
 	}
 	return w
 }
-
-// Even gives n numbers from a to b at the same distance, both ends exactly.
-func Even(a, b float64, n int) []float64 {
-	v := make([]float64, n)
-	for i := range v {
-		v[i] = a + (b-a)*float64(i)/float64(n-1)
-	}
-	v[n-1] = b
-	return v
-}

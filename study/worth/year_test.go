@@ -12,6 +12,7 @@ import (
 	"evenkeel/fleet"
 	"evenkeel/fleet/invent"
 	"evenkeel/solve"
+	"evenkeel/study/ranges"
 	"evenkeel/study/worth"
 )
 
@@ -118,7 +119,7 @@ func TestProductNeverCosts(t *testing.T) {
 		c, _, p := invented(t, seed, quick)
 		for _, gap := range []float64{0.001, 0.0002} {
 			opt := solve.Options{Gap: gap}
-			plan := worth.Plan{Case: c, Product: p, VolumesMW: worth.Even(0, 40, 6), ActivationsS: []float64{0.2, 3}, Options: opt, Hours: someHours}
+			plan := worth.Plan{Case: c, Product: p, VolumesMW: ranges.Range{To: 40, N: 6}.Values(), ActivationsS: []float64{0.2, 3}, Options: opt, Hours: someHours}
 			s, records := study(t, plan)
 			plan.VolumesMW = []float64{0, 40}
 			_, ends := study(t, plan)
@@ -131,7 +132,7 @@ func TestProductNeverCosts(t *testing.T) {
 					if k > 0 && k < 6 && pt.Cost > r.Points[k-1].Cost+gap*math.Abs(pt.Cost) {
 						t.Errorf("seed %d, hour %d: volume %d raises the cost from %v to %v", seed, r.Index, k, r.Points[k-1].Cost, pt.Cost)
 					}
-					if k < 6 && pt.HeldMW > worth.Even(0, 40, 6)[k]+1e-6 {
+					if k < 6 && pt.HeldMW > (ranges.Range{To: 40, N: 6}).At(k)+1e-6 {
 						t.Errorf("seed %d, hour %d: %v MW held at volume %d", seed, r.Index, pt.HeldMW, k)
 					}
 				}
@@ -170,7 +171,7 @@ func TestProductNeverCostsInClosedLoop(t *testing.T) {
 			t.Fatal(found)
 		}
 		const gap = 0.0002
-		_, records := study(t, worth.Plan{Case: c, Product: p, VolumesMW: worth.Even(0, 40, 5), ActivationsS: []float64{0.25, 2},
+		_, records := study(t, worth.Plan{Case: c, Product: p, VolumesMW: ranges.Range{To: 40, N: 5}.Values(), ActivationsS: []float64{0.25, 2},
 			Options: solve.Options{Gap: gap}, Hours: []int{33, 1461, 2500, 4870, 6331, 8279}})
 		held, mended := 0.0, 0
 		for i := range records {
@@ -200,7 +201,7 @@ func TestProductNeverCostsInClosedLoop(t *testing.T) {
 // sums are those of its hours.
 func TestTallyBalances(t *testing.T) {
 	c, _, p := invented(t, 2, quick)
-	s, records := study(t, worth.Plan{Case: c, Product: p, VolumesMW: worth.Even(0, 40, 3), Hours: someHours})
+	s, records := study(t, worth.Plan{Case: c, Product: p, VolumesMW: ranges.Range{To: 40, N: 3}.Values(), Hours: someHours})
 	r := s.Tally(records)
 	near(t, "counted up by", r.PerYear, 8760.0/float64(len(someHours)), 1e-9)
 	for _, u := range r.Uplifts {
